@@ -1,0 +1,86 @@
+"""`filmfit runs`: what the deposition records hold.
+
+Knows options; the records stand in records/store.py.
+"""
+
+from typing import Any
+
+import click
+
+from filmfit.cli.options import json_option, records_option
+
+
+@click.group(epilog="Example: filmfit runs list")
+def runs() -> None:
+    """List and show the runs in the deposition records."""
+
+
+@runs.command("list", epilog="Example: filmfit runs list --last 20")
+@records_option
+@json_option
+@click.option("--last", type=click.IntRange(min=1), metavar="N", help="The newest N only.")
+@click.option("--film", metavar="NAME", help="Runs of this film only.")
+def list_(records: str, json_to: str | None, last: int | None, film: str | None) -> None:
+    """List the runs, newest first, each with its latest usable fit."""
+    from filmfit.cli.options import write_json
+    from filmfit.records.store import Records
+    from filmfit.report.text import runs_text
+
+    _must_exist(records)
+    with Records(records) as store:
+        found = store.list_runs(last, film)
+    if json_to is None:
+        click.echo(runs_text(found))
+        return
+    write_json({"schema": "filmfit.runs/1", "runs": [_plain(run) for run in found]}, json_to)
+
+
+@runs.command("show", epilog="Example: filmfit runs show C1-0231")
+@click.argument("run")
+@records_option
+@json_option
+def show(run: str, records: str, json_to: str | None) -> None:
+    """Show a run: conditions, their changes, and every fit."""
+    from filmfit.cli.options import write_json
+    from filmfit.records.store import Records
+    from filmfit.report.text import run_text
+
+    _must_exist(records)
+    with Records(records) as store:
+        found = store.show(run)
+    if json_to is None:
+        click.echo(run_text(found))
+        return
+    write_json({"schema": "filmfit.run/1", **_plain(found)}, json_to)
+
+
+def _must_exist(records: str) -> None:
+    """Refuse to make new records where someone only wants to look."""
+    from pathlib import Path
+
+    from filmfit.errors import RecordsError
+
+    if "://" not in records and not Path(records).exists():
+        raise RecordsError(records, "no such records", do="file a run with 'filmfit fit', or name them with --records")
+
+
+def _plain(found: Any) -> dict[str, Any]:
+    """Return a record as plain JSON types."""
+    from dataclasses import fields, is_dataclass
+    from datetime import date
+
+    from filmfit.result import Quantity
+
+    def plain(value: Any) -> Any:
+        if isinstance(value, Quantity):
+            return value.model_dump(mode="json")
+        if is_dataclass(value) and not isinstance(value, type):
+            return {one.name: plain(getattr(value, one.name)) for one in fields(value)}
+        if isinstance(value, date):
+            return value.isoformat()
+        if isinstance(value, list | tuple):
+            return [plain(one) for one in value]
+        return value
+
+    shown: dict[str, Any] = plain(found)
+    return shown

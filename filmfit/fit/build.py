@@ -1,0 +1,347 @@
+"""From run files and their spectra to one problem: which parameters there are, where they begin, what is expected.
+
+Knows run files, library and measured spectra; does not search. Parameter names are scope.object.parameter:
+layer.<run>/<layer>.<parameter>, or material.<layer>.<parameter> where runs share a layer's constants,
+instrument.<id>.<parameter>, run.<run>.wedge, plate.<run>.<parameter>.
+"""
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from filmfit.dispersion.compose import Dispersion
+from filmfit.errors import Faults, FilmfitError, MaterialError, RunFileError, nearest
+from filmfit.fit.model import InstrumentModel, LayerModel, PlateModel, RunModel
+from filmfit.fit.plate import PlateStart, plate_from_scans, plate_of_material
+from filmfit.fit.problem import IndexExpectation, Parameter, Problem
+from filmfit.fit.scan import Scan, noise_sigma
+from filmfit.materials import Material, Start, material
+from filmfit.runfile.keys import BareSpectrum, Instrument, Layer, Spectrum, Value
+from filmfit.runfile.load import RunFile
+from filmfit.spectra.spectrum import Spectrum as Measured
+from filmfit.stack import Beam
+
+GLASSES = ("soda-lime-glass", "fused-silica", "borosilicate-crown-517642")
+STARTING_MODELS = {"tco": "generic-tco", "dielectric": "generic-dielectric", "metal": "generic-metal"}
+FREE_LAW_BOUNDS = 1e3
+THICKNESS_START_NM, THICKNESS_LOW_NM, THICKNESS_HIGH_NM = 100.0, 2.0, 3500.0
+SCALE_LOW, SCALE_HIGH = 0.8, 1.2
+OFFSET_LIMIT_NM = 3.0
+# Errors that no run file states: typical values of the trade (common practice, no source).
+SLIT_NM, SLIT_SIGMA_NM, SLIT_LOW_NM, SLIT_HIGH_NM = 2.0, 1.5, 0.05, 10.0
+SLIT_STATED_SHARE = 0.2
+WEDGE_START, WEDGE_SIGMA, WEDGE_LOW, WEDGE_HIGH = 0.005, 0.01, 1e-4, 0.1
+PLATE_INDEX_LIMIT, PLATE_SHIFT_LIMIT, PLATE_FACTOR_HIGH = 0.1, 0.1, 10.0
+FEWEST_POINTS = 10
+
+
+@dataclass(frozen=True)
+class RunInput:
+    """A run file with its spectra as read: of the coated plate and of the bare one, in the file's order."""
+
+    file: RunFile
+    coated: tuple[Measured, ...]
+    bare: tuple[Measured, ...]
+
+
+@dataclass(frozen=True)
+class Built:
+    """A problem, the main layer (run, layer) of each run, the hints for the search, and what was left out."""
+
+    problem: Problem
+    main: tuple[tuple[int, int], ...]
+    hints_nm: tuple[float | None, ...]
+    starting: tuple[Material | None, ...]  # where the main layer of each run came from
+    plates: tuple[PlateStart, ...]
+    left_out: tuple[tuple[str, float, float], ...]  # material, valid range, that cost points
+
+
+def build_problem(runs: Sequence[RunInput], share_layers: bool = False) -> Built:
+    """Return the joint problem of any number of runs.
+
+    Args:
+        runs: run files with their spectra.
+        share_layers: layers of one name share their optical constants; each run keeps its own thickness.
+
+    Raises:
+        Faults: unknown materials, laws or parameters, each with its line.
+    """
+    builder = _Builder(share_layers)
+    for one in runs:
+        builder.add_run(one)
+    if builder.faults:
+        raise Faults(builder.faults)
+    return Built(
+        Problem(tuple(builder.parameters), tuple(builder.runs), tuple(builder.expectations)),
+        tuple(builder.main), tuple(builder.hints), tuple(builder.starting), tuple(builder.plates),
+        tuple(builder.left_out),
+    )  # fmt: skip
+
+
+@dataclass
+class _Builder:
+    """The problem while it grows, run by run."""
+
+    share_layers: bool
+    parameters: list[Parameter] = field(default_factory=list)
+    places: dict[str, int] = field(default_factory=dict)
+    runs: list[RunModel] = field(default_factory=list)
+    expectations: list[IndexExpectation] = field(default_factory=list)
+    main: list[tuple[int, int]] = field(default_factory=list)
+    hints: list[float | None] = field(default_factory=list)
+    starting: list[Material | None] = field(default_factory=list)
+    plates: list[PlateStart] = field(default_factory=list)
+    left_out: list[tuple[str, float, float]] = field(default_factory=list)
+    faults: list[FilmfitError] = field(default_factory=list)
+
+    def parameter(self, made: Parameter) -> int:
+        """Return a parameter's index; one that another run already made is shared."""
+        if made.name not in self.places:
+            self.places[made.name] = len(self.parameters)
+            self.parameters.append(made)
+        return self.places[made.name]
+
+    def add_run(self, given: RunInput) -> None:
+        """Add one run's layers, plate, instrument and scans, or its faults."""
+        content, run_id = given.file.content, given.file.content.run.id
+        before = len(self.faults)
+        number = len(self.runs)
+        sources = [self.source(given.file, at, layer) for at, layer in enumerate(content.layer)]
+        plate_material = self.plate_material(given.file)
+        if len(self.faults) > before:
+            return
+        fixed = [found for keys, found in zip(content.layer, sources, strict=True) if keys.material and found]
+        scans = self.scans(given, [*fixed, plate_material] if plate_material else fixed)
+        if len(self.faults) > before:
+            return
+        layers = tuple(
+            self.layer(given.file, at, layer, found)
+            for at, (layer, found) in enumerate(zip(content.layer, sources, strict=True))
+        )
+        if len(self.faults) > before:
+            return
+        plate = self.plate(run_id, content.substrate.thickness_mm, plate_material, scans)
+        instrument = self.instrument(run_id, content.instrument)
+        self.runs.append(RunModel(run_id, scans, layers, plate, instrument))
+        fitted = [at for at, layer in enumerate(layers) if layer.dispersion is not None]
+        marked = [at for at, layer in enumerate(content.layer) if layer.main]
+        main = (marked or fitted or [len(layers) - 1])[-1]
+        self.main.append((number, main))
+        self.starting.append(sources[main])
+        self.hints.append(_hint(content.layer[main]))
+        source = sources[main]
+        if source is not None and source.index_550 is not None and layers[main].dispersion is not None:
+            self.expectations.append(
+                IndexExpectation(number, main, 550.0, source.index_550.value, source.index_550.sigma)
+            )
+
+    def source(self, file: RunFile, at: int, layer: Layer) -> Material | None:
+        """Return the library material that a layer names; None for a free choice of laws."""
+        if layer.laws is not None:
+            return None
+        key = "material" if layer.material else "like" if layer.like else "model"
+        name = layer.material or layer.like or STARTING_MODELS[layer.model or ""]
+        where = file.where("layer", at, key)
+        try:
+            found = material(name, file.path.parent, where)
+        except MaterialError as error:
+            self.faults.append(error)
+            return None
+        if key == "material" and found.kind != "fixed":
+            self.faults.append(
+                MaterialError(where, f"'{name}' is where a fit begins, not a known material", do=f'use like = "{name}"')
+            )
+        elif key != "material" and not found.laws:
+            self.faults.append(
+                MaterialError(where, f"'{name}' has no law to fit", do=f'use material = "{name}" to hold it fixed')
+            )
+        return found
+
+    def plate_material(self, file: RunFile) -> Material | None:
+        """Return the substrate's material, None where only its spectra are given."""
+        name = file.content.substrate.material
+        if name is None:
+            return None
+        try:
+            return material(name, file.path.parent, file.where("substrate", "material"))
+        except MaterialError as error:
+            self.faults.append(error)
+            return None
+
+    def scans(self, given: RunInput, fixed: Sequence[Material]) -> tuple[Scan, ...]:
+        """Return the run's scans inside the range of every material that is held fixed."""
+        content = given.file.content
+        scans = []
+        for keys, measured in zip(content.spectrum, given.coated, strict=True):
+            scans.append(_scan(keys, measured, keys.side, content.substrate.back, True))
+        for bare, measured in zip(content.substrate.spectrum, given.bare, strict=True):
+            scans.append(_scan(bare, measured, "film", "bare", False))
+        kept = []
+        bare_t = [scan for scan in scans if not scan.coated and scan.beam.quantity == "T"]
+        for scan in scans:
+            keep = np.ones(scan.wavelength_nm.size, bool)
+            for one in fixed:
+                inside = one.covers(scan.wavelength_nm)
+                if not inside.all() and (one.name, *one.valid_nm) not in self.left_out:
+                    self.left_out.append((one.name, *one.valid_nm))
+                keep &= inside
+            if content.substrate.material is None and bare_t:
+                keep &= (scan.wavelength_nm >= bare_t[0].wavelength_nm[0]) & (
+                    scan.wavelength_nm <= bare_t[0].wavelength_nm[-1]
+                )
+            if scan.coated and keep.sum() < FEWEST_POINTS:
+                self.faults.append(
+                    RunFileError(
+                        given.file.where("spectrum"),
+                        f"{int(keep.sum())} points lie where plate and layers are known",
+                        f"at least {FEWEST_POINTS}",
+                        "measure the bare plate over the same range",
+                    )
+                )
+            kept.append(scan.masked(keep))
+        return tuple(kept)
+
+    def layer(self, file: RunFile, at: int, keys: Layer, source: Material | None) -> LayerModel:
+        """Return a layer's model and note its parameters."""
+        run_id = file.content.run.id
+        stem = f"layer.{run_id}/{keys.name}"
+        thickness = self.parameter(_thickness(f"{stem}.thickness_nm", keys))
+        if keys.material is not None:
+            return LayerModel(keys.name, thickness, material=source)
+        try:
+            laws = keys.laws if keys.laws is not None else source.laws if source is not None else ()
+            dispersion = Dispersion(laws, file.where("layer", at, "laws"))
+        except MaterialError as error:
+            self.faults.append(error)
+            return LayerModel(keys.name, thickness)
+        for name in keys.parameters:
+            if name not in dispersion.names:
+                hint = nearest(name, dispersion.names)
+                self.faults.append(
+                    RunFileError(
+                        file.where("layer", at, "parameters", name),
+                        "no such parameter of this layer",
+                        ", ".join(dispersion.names),
+                        hint,
+                    )
+                )
+        owner = f"material.{keys.name}" if self.share_layers else stem
+        begins = source.parameters if source is not None else _free_starts(dispersion)
+        indices = []
+        for name in dispersion.names:
+            try:
+                made = _parameter(f"{owner}.{name}", begins[name], keys.parameters.get(name))
+            except ValueError as error:
+                self.faults.append(RunFileError(file.where("layer", at, "parameters", name), str(error)))
+                continue
+            indices.append(self.parameter(made))
+        return LayerModel(keys.name, thickness, dispersion, np.array(indices, dtype=np.intp))
+
+    def plate(self, run_id: str, thickness_mm: float, found: Material | None, scans: Sequence[Scan]) -> PlateModel:
+        """Return the plate's model and note its corrections."""
+        bare = [scan for scan in scans if not scan.coated]
+        measured = any(scan.beam.quantity == "T" for scan in bare)
+        if measured:
+            glasses = [found] if found is not None else [material(name) for name in GLASSES]
+            start = plate_from_scans(bare, glasses, thickness_mm)
+        else:
+            assert found is not None
+            grid = np.unique(np.concatenate([scan.wavelength_nm for scan in scans]))
+            start = plate_of_material(found, grid, thickness_mm)
+        self.plates.append(start)
+        stem = f"plate.{run_id}"
+        factor, shift = start.absorbance_factor_sigma, start.absorbance_shift_sigma
+        return PlateModel(
+            thickness_mm, start.wavelength_nm, start.index, start.absorbance,
+            self.parameter(
+                Parameter(f"{stem}.index_shift", 0.0, -PLATE_INDEX_LIMIT, PLATE_INDEX_LIMIT, 0.0,
+                          start.index_shift_sigma)
+            ),
+            self.parameter(
+                Parameter(f"{stem}.absorbance_factor", 1.0, 0.0, PLATE_FACTOR_HIGH, 1.0, factor or None, factor > 0)
+            ),
+            self.parameter(
+                Parameter(f"{stem}.absorbance_shift", 0.0, -PLATE_SHIFT_LIMIT, PLATE_SHIFT_LIMIT, 0.0, shift,
+                          shift is not None)
+            ),
+            measured,
+        )  # fmt: skip
+
+    def instrument(self, run_id: str, keys: Instrument) -> InstrumentModel:
+        """Return the instrument's model and note its errors; runs of one instrument share them."""
+        stem = f"instrument.{keys.id}"
+        slit = keys.slit_nm if keys.slit_nm is not None else SLIT_NM
+        slit_sigma = SLIT_SIGMA_NM if keys.slit_nm is None else max(SLIT_STATED_SHARE * slit, 0.1)
+        return InstrumentModel(
+            self.parameter(Parameter(f"{stem}.scale_R", 1.0, SCALE_LOW, SCALE_HIGH, 1.0, keys.scale_sigma_R)),
+            self.parameter(Parameter(f"{stem}.scale_T", 1.0, SCALE_LOW, SCALE_HIGH, 1.0, keys.scale_sigma_T)),
+            self.parameter(
+                Parameter(f"{stem}.offset_nm", 0.0, -OFFSET_LIMIT_NM, OFFSET_LIMIT_NM, 0.0, keys.offset_sigma_nm)
+            ),
+            self.parameter(
+                Parameter(f"{stem}.slit_nm", max(slit, SLIT_LOW_NM), SLIT_LOW_NM, SLIT_HIGH_NM, slit, slit_sigma)
+            ),
+            self.parameter(Parameter(f"run.{run_id}.wedge", WEDGE_START, WEDGE_LOW, WEDGE_HIGH, 0.0, WEDGE_SIGMA)),
+        )
+
+
+def _scan(keys: BareSpectrum | Spectrum, measured: Measured, side: str, back: str, coated: bool) -> Scan:
+    """Return a measured spectrum as the fit uses it, its noise as stated or from its own scatter."""
+    sigma = keys.sigma if keys.sigma is not None else noise_sigma(measured.values)
+    beam = Beam(keys.quantity, keys.angle_deg, keys.polarization, side, back)  # type: ignore[arg-type]
+    return Scan(beam, measured.wavelength_nm, measured.values, np.full(measured.values.size, sigma), coated)
+
+
+def _thickness(name: str, keys: Layer) -> Parameter:
+    """Return a layer's thickness: expected, bounded, fixed, or free with a hint for the search."""
+    given = keys.thickness_nm
+    free = Start(THICKNESS_START_NM, THICKNESS_LOW_NM, THICKNESS_HIGH_NM)
+    if given is None or isinstance(given, float | int):
+        hint = THICKNESS_START_NM if given is None else float(given)
+        held = keys.material is not None and given is not None
+        return Parameter(name, hint, 0.0 if held else free.low, free.high, vary=not held)
+    return _parameter(name, Start(free.value, 0.0 if given.sigma else free.low, free.high), given)
+
+
+def _parameter(name: str, begins: Start, given: float | Value | None) -> Parameter:
+    """Return a parameter with what the run file says of it over where its law begins.
+
+    Raises:
+        ValueError: what the run file says leaves no room.
+    """
+    if given is None:
+        return Parameter(name, begins.value, begins.low, begins.high)
+    if isinstance(given, float | int):
+        return Parameter(name, float(given), float(given) - 1.0, float(given) + 1.0, vary=False)
+    low = begins.low if given.low is None else given.low
+    high = begins.high if given.high is None else given.high
+    if given.value is not None and given.sigma is None:
+        return Parameter(name, given.value, given.value - 1.0, given.value + 1.0, vary=False)
+    if low >= high:
+        raise ValueError(f"no room between {low:g} and {high:g}")
+    start = given.start if given.start is not None else given.value if given.value is not None else begins.value
+    inside = float(np.clip(start, low + 1e-6 * (high - low), high - 1e-6 * (high - low)))
+    return Parameter(name, inside, low, high, given.value, given.sigma)
+
+
+def _free_starts(dispersion: Dispersion) -> dict[str, Start]:
+    """Return starts for a free choice of laws, from the generic materials where they know the parameter."""
+    known: dict[str, Start] = {}
+    for model in STARTING_MODELS.values():
+        known = {**material(model).parameters, **known}
+    starts = {}
+    for name, parameter in zip(dispersion.names, dispersion.parameters, strict=True):
+        stem, _, last = name.rpartition(".")
+        plain = f"{stem.rstrip('-0123456789')}.{last}"
+        low, high = max(parameter.low, -FREE_LAW_BOUNDS), min(parameter.high, FREE_LAW_BOUNDS)
+        starts[name] = known.get(name) or known.get(plain) or Start(float(np.clip(1.0, low, high)), low, high)
+    return starts
+
+
+def _hint(layer: Layer) -> float | None:
+    """Return the thickness that the user expects of a layer, as a further trial of the search."""
+    given = layer.thickness_nm
+    if isinstance(given, Value):
+        return given.value or given.start
+    return None if given is None else float(given)

@@ -1,0 +1,220 @@
+"""One run as a function of parameters: every scan of it predicted, with derivatives.
+
+Knows which parameter goes where in layers, plate and instrument; does not know bounds, priors or how to search.
+Parameter values have shape (P,) or, for a batch of trials, (P, B); predictions (..., N) over all points of a run.
+"""
+
+from dataclasses import dataclass, field, replace
+from typing import Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+
+from filmfit.fit.scan import Scan
+from filmfit.materials import Material
+from filmfit.measurement import Errors, observe
+from filmfit.stack import ComplexArray, FloatArray, Optics
+from filmfit.units import HC_EV_NM
+
+IndexArray = NDArray[np.intp]
+
+
+class Dispersive(Protocol):
+    """A dielectric function with parameters: a sum of laws, with or without a correction."""
+
+    @property
+    def names(self) -> tuple[str, ...]:
+        """Full names of the parameters, in order."""
+
+    def evaluate(self, energy_eV: FloatArray, values: FloatArray) -> tuple[ComplexArray, ComplexArray]:
+        """Return epsilon (..., E) and its derivatives (P, ..., E)."""
+
+
+@dataclass(frozen=True)
+class LayerModel:
+    """A layer: its laws with the indices of their parameters, or a fixed material; and its thickness."""
+
+    name: str
+    thickness: int
+    dispersion: Dispersive | None = None
+    laws: IndexArray = field(default_factory=lambda: np.empty(0, np.intp))
+    material: Material | None = None
+
+    @property
+    def law_names(self) -> tuple[str, ...]:
+        """Names of the layer's laws, each once; empty where it is held fixed."""
+        names = self.dispersion.names if self.dispersion is not None else ()
+        return tuple(dict.fromkeys(name.partition(".")[0] for name in names))
+
+
+@dataclass(frozen=True)
+class PlateModel:
+    """The plate: index and absorbance of one pass as known beforehand, and the parameters that may correct them.
+
+    A plate that was `measured` on the same instrument is known at the instrument's own wavelengths and through its own
+    slit: offset and slit do not act on it again.
+    """
+
+    thickness_mm: float
+    wavelength_nm: FloatArray
+    index: FloatArray
+    absorbance: FloatArray  # natural logarithm, one pass at normal incidence
+    index_shift: int
+    absorbance_factor: int
+    absorbance_shift: int
+    measured: bool
+
+    def at(self, wavelength_nm: FloatArray) -> tuple[FloatArray, FloatArray]:
+        """Return index and absorbance (W,) interpolated at the wavelengths."""
+        return (
+            np.interp(wavelength_nm, self.wavelength_nm, self.index),
+            np.interp(wavelength_nm, self.wavelength_nm, self.absorbance),
+        )
+
+
+@dataclass(frozen=True)
+class InstrumentModel:
+    """Indices of the instrument's and the sample's own errors."""
+
+    scale_R: int
+    scale_T: int
+    offset_nm: int
+    slit_nm: int
+    wedge: int
+
+
+@dataclass(frozen=True)
+class Prediction:
+    """Predicted readings (..., N) of all scans of a run, one after the other, and their derivatives (P, ..., N)."""
+
+    values: FloatArray
+    jacobian: FloatArray
+
+
+@dataclass(frozen=True)
+class RunModel:
+    """A run: scans, layers from the substrate up, plate, instrument."""
+
+    run: str
+    scans: tuple[Scan, ...]
+    layers: tuple[LayerModel, ...]
+    plate: PlateModel
+    instrument: InstrumentModel
+
+    def thinned(self, at_most: int) -> "RunModel":
+        """Return the run with at most so many points in each scan."""
+        return replace(self, scans=tuple(scan.thinned(at_most) for scan in self.scans))
+
+    def predict(self, values: FloatArray) -> Prediction:
+        """Return what the instrument would have written, and how it depends on each parameter.
+
+        Args:
+            values: all parameters of the problem, (P,) or (P, B); offset, slit and wedge are equal over a batch.
+
+        Returns:
+            Readings and derivatives over all points of all scans.
+        """
+        batch = values.shape[1:]
+        points = sum(scan.values.size for scan in self.scans)
+        found = np.empty((*batch, points))
+        jacobian = np.zeros((len(values), *batch, points))
+        grids: dict[tuple[bytes, bool], OnGrid] = {}
+        start = 0
+        for scan in self.scans:
+            key = (scan.wavelength_nm.tobytes(), scan.coated)
+            if key not in grids:
+                grids[key] = on_grid(self, values, scan.wavelength_nm, scan.coated)
+            stop = start + scan.values.size
+            found[..., start:stop] = self._scan(values, scan, grids[key], jacobian[..., start:stop])
+            start = stop
+        return Prediction(found, jacobian)
+
+    def _scan(self, values: FloatArray, scan: Scan, grid: "OnGrid", jacobian: FloatArray) -> FloatArray:
+        """Fill one scan's block of the Jacobian and return its readings."""
+        tool = self.instrument
+        scale = tool.scale_R if scan.beam.quantity == "R" else tool.scale_T
+        errors = Errors(
+            values[scale][..., None],
+            _common(values[tool.slit_nm]),
+            _common(values[tool.wedge]) if scan.coated else 0.0,
+        )
+        seen = observe(grid.optics, grid.thickness_nm, self.plate.thickness_mm, scan.beam, errors)
+        layers = self.layers if scan.coated else ()
+        for number, layer in enumerate(layers):
+            jacobian[layer.thickness] += seen.d_thickness[number]
+            if layer.laws.size:
+                # a product per real part: Re(a b) without the unused imaginary half
+                gradient = grid.gradients[number]
+                slope = seen.d_epsilon[number]
+                jacobian[layer.laws] += gradient.real * slope.real - gradient.imag * slope.imag
+        for index, derivative in grid.plate.items():
+            jacobian[index] += (seen.d_substrate * derivative).real
+        jacobian[scale] += seen.d_scale
+        jacobian[tool.offset_nm] += seen.d_wavelength
+        jacobian[tool.slit_nm] += seen.d_slit
+        jacobian[tool.wedge] += seen.d_wedge
+        return seen.value
+
+
+@dataclass(frozen=True)
+class OnGrid:
+    """Everything that scans on one wavelength grid share."""
+
+    optics: Optics
+    thickness_nm: FloatArray
+    gradients: tuple[ComplexArray, ...]
+    plate: dict[int, ComplexArray]
+
+
+def on_grid(run: RunModel, values: FloatArray, nominal_nm: FloatArray, coated: bool) -> OnGrid:
+    """Evaluate a run's laws, materials and plate at the true wavelengths of a grid."""
+    batch = values.shape[1:]
+    true_nm = nominal_nm + _common(values[run.instrument.offset_nm])
+    layers = run.layers if coated else ()
+    epsilon = np.empty((len(layers), *batch, true_nm.size), complex)
+    gradients = []
+    for number, layer in enumerate(layers):
+        if layer.dispersion is None:
+            assert layer.material is not None
+            epsilon[number] = layer.material.epsilon(np.clip(true_nm, *layer.material.valid_nm))
+            gradients.append(np.empty((0, *batch, true_nm.size), complex))
+            continue
+        epsilon[number], gradient = layer.dispersion.evaluate(HC_EV_NM / true_nm, values[layer.laws][..., None])
+        gradients.append(gradient)
+    plate_nm = nominal_nm if run.plate.measured else true_nm
+    substrate, plate = _substrate(run.plate, values, plate_nm)
+    substrate_slope = np.zeros_like(substrate) if run.plate.measured else _slope(substrate, true_nm)
+    thickness = np.array([values[layer.thickness] for layer in layers]).reshape(len(layers), *batch)
+    optics = Optics(true_nm, epsilon, _slope(epsilon, true_nm), substrate, substrate_slope)
+    return OnGrid(optics, thickness, tuple(gradients), plate)
+
+
+def _common(values: FloatArray) -> float:
+    """Return the one value that a batch shares."""
+    return float(np.ravel(values)[0])
+
+
+def _slope(values: ComplexArray, wavelength_nm: FloatArray) -> ComplexArray:
+    """Return d values / d wavelength (..., W) in 1/nm."""
+    if values.shape[0] == 0:
+        return values
+    slope: ComplexArray = np.gradient(values, wavelength_nm, axis=-1)
+    return slope
+
+
+def _substrate(
+    plate: PlateModel, values: FloatArray, wavelength_nm: FloatArray
+) -> tuple[ComplexArray, dict[int, ComplexArray]]:
+    """Return the plate's dielectric function (..., W) and its derivatives by parameter index."""
+    index, absorbance = plate.at(wavelength_nm)
+    factor = values[plate.absorbance_factor][..., None]
+    total = factor * absorbance + values[plate.absorbance_shift][..., None]
+    absorbs = total > 0
+    k_per_absorbance = wavelength_nm / (4 * np.pi * plate.thickness_mm * 1e6)
+    n = index + values[plate.index_shift][..., None] + 1j * k_per_absorbance * np.where(absorbs, total, 0.0)
+    by_absorbance = 2j * n * k_per_absorbance * absorbs
+    return n**2, {
+        plate.index_shift: 2 * n,
+        plate.absorbance_factor: by_absorbance * absorbance,
+        plate.absorbance_shift: by_absorbance,
+    }

@@ -1,0 +1,107 @@
+"""Where a fit begins: every thickness that may be meant is visited, and the distinct minima are kept.
+
+Knows that minima of R and T against thickness stand about half a wavelength over the index apart; does not judge
+which of them is right. No starting value is needed; a hint only adds a trial.
+"""
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from filmfit.fit.descend import Trials, descend
+from filmfit.fit.problem import Problem
+from filmfit.stack import FloatArray
+
+THINNEST_NM = 8.0
+THICKEST_NM = 3000.0
+THIN_RATIO = 1.15  # spacing of trials while a film is thinner than a fringe
+STEP_NM = 30.0  # and beyond: an eighth of a fringe order at 450 nm and index 1.9
+PLASMA_SEEDS_EV = (0.5, 1.2, 1.9)
+
+COARSE_POINTS = 60
+COARSE_STEPS = 8
+MIDDLE_TRIALS = 48
+MIDDLE_STEPS = 12
+KEEP = 10
+SAME_NM = 4.0  # two ends this near, and within SAME_RATIO, are one minimum
+SAME_RATIO = 0.02
+
+
+def thickness_seeds(low_nm: float, high_nm: float) -> FloatArray:
+    """Return trial thicknesses (B,) dense enough that every minimum has one in its basin."""
+    seeds = [max(low_nm, THINNEST_NM)]
+    while seeds[-1] < min(high_nm, THICKEST_NM):
+        seeds.append(min(seeds[-1] * THIN_RATIO, seeds[-1] + STEP_NM))
+    return np.array(seeds[:-1])
+
+
+def search(problem: Problem, thickness: int, hint_nm: float | None = None) -> Trials:
+    """Return the distinct minima of one run's problem, best first.
+
+    Args:
+        problem: one run; offset, slit and wedge are held during the search.
+        thickness: index of the parameter that is searched.
+        hint_nm: a further trial, if the user gave one.
+
+    Returns:
+        Trials over the free parameters of `searchable(problem)`.
+
+    Reference: Levenberg-Marquardt from every start, survivors compared; tests/recovery/.
+    """
+    coarse = searchable(problem).thinned(COARSE_POINTS)
+    starts = _starts(coarse, thickness, hint_nm)
+    row = coarse.free.index(thickness)
+    trials = descend(coarse, starts, COARSE_STEPS)
+    trials = trials.best(_distinct(trials, row, MIDDLE_TRIALS, each=3))
+    trials = descend(coarse, trials.values, MIDDLE_STEPS)
+    return trials.best(_distinct(trials, row, KEEP, each=1))
+
+
+def searchable(problem: Problem) -> Problem:
+    """Return the problem with the fine errors of the instrument held: they do not move a minimum."""
+    held = {p.name: {"vary": False} for p in problem.parameters if p.name.endswith(FINE_ERRORS)}
+    return problem.changed(held)
+
+
+FINE_ERRORS = (".offset_nm", ".slit_nm", ".wedge")
+
+
+def _starts(problem: Problem, thickness: int, hint_nm: float | None) -> FloatArray:
+    """Return the starting points (F, B): every thickness with every seed of the carriers."""
+    chosen = problem.parameters[thickness]
+    seeds = thickness_seeds(chosen.low, chosen.high)
+    if hint_nm is not None:
+        seeds = np.append(seeds, hint_nm)
+    columns = []
+    for changes in _law_seeds(problem):
+        block = np.repeat(problem.start_values()[:, None], seeds.size, axis=1)
+        block[thickness] = seeds
+        for index, value in changes:
+            block[index] = value
+        columns.append(block)
+    return np.concatenate(columns, axis=1)[list(problem.free)]
+
+
+def _law_seeds(problem: Problem) -> Sequence[Sequence[tuple[int, float]]]:
+    """Return alternative starting values of the laws: few to many carriers where a film may have both."""
+    plasma = [
+        index
+        for index, p in enumerate(problem.parameters)
+        if p.vary and p.name.endswith(".drude.plasma_eV") and p.low < PLASMA_SEEDS_EV[0]
+    ]
+    if not plasma:
+        return [()]
+    return [[(index, seed) for index in plasma] for seed in PLASMA_SEEDS_EV]
+
+
+def _distinct(trials: Trials, row: int, keep: int, each: int) -> FloatArray:
+    """Return the indices of the best trials, at most `each` of one thickness."""
+    chosen: list[int] = []
+    for index in np.argsort(trials.chi2, kind="stable"):
+        here = trials.values[row, index]
+        near = sum(abs(trials.values[row, other] - here) < max(SAME_NM, SAME_RATIO * here) for other in chosen)
+        if near < each:
+            chosen.append(int(index))
+        if len(chosen) == keep:
+            break
+    return np.array(chosen)

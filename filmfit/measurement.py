@@ -1,0 +1,92 @@
+"""What an instrument writes for a plate: slit and wedge average the fringes, the wavelength is off, the scale is off.
+
+Knows the instrument's errors and their derivatives; does not know laws, priors or files.
+"""
+
+from dataclasses import dataclass
+from typing import Any, NamedTuple
+
+import numpy as np
+
+from filmfit.stack import Beam, ComplexArray, FloatArray, Optics, ideal
+
+# Two-point quadrature: exact to third order, so the fringe contrast is right while the phase spread stays below ~1 rad.
+TRIANGLE_SIGMA_PER_FWHM = 6.0**-0.5  # a triangular slit of full width B at half height has the variance B^2/6
+UNIFORM_SIGMA_PER_HALF_WIDTH = 3.0**-0.5  # a wedge of +-w has the variance w^2/3
+
+
+class Errors(NamedTuple):
+    """The instrument's and the sample's own errors, as the fit has them at the moment.
+
+    `scale` multiplies the ideal value; `slit_nm` is the full width at half height of a triangular slit; `wedge` the
+    half width of the thickness variation over the spot, as a fraction of the thickness.
+    """
+
+    scale: float | FloatArray
+    slit_nm: float
+    wedge: float
+
+
+@dataclass(frozen=True)
+class Observed:
+    """What the instrument writes, and the derivatives of it that the fit needs (shapes as in `stack.Ideal`)."""
+
+    value: FloatArray
+    d_epsilon: ComplexArray
+    d_thickness: FloatArray
+    d_substrate: ComplexArray
+    d_wavelength: FloatArray
+    d_scale: FloatArray
+    d_slit: FloatArray
+    d_wedge: FloatArray
+
+
+def observe(optics: Optics, thickness_nm: FloatArray, substrate_mm: float, beam: Beam, errors: Errors) -> Observed:
+    """Return what an instrument with the given errors writes for a coated plate.
+
+    Args:
+        optics: dielectric functions at the true wavelengths, (W,).
+        thickness_nm: layers from the substrate up, (L, ...).
+        substrate_mm: thickness of the plate in mm.
+        beam: quantity and geometry.
+        errors: scale, slit and wedge; a batched scale has shape (..., 1).
+
+    Returns:
+        Value and derivatives, batch axes first, wavelength last.
+
+    Reference: fringe contrast under a slit and a wedge: Swanepoel, J. Phys. E 17, 896 (1984);
+        tests/published/test_fringe_contrast.py.
+    """
+    shift_nm = errors.slit_nm * TRIANGLE_SIGMA_PER_FWHM
+    spread = errors.wedge * UNIFORM_SIGMA_PER_HALF_WIDTH
+    has_fringes = optics.epsilon.shape[0] > 0
+    slit_signs = (-1.0, 1.0) if has_fringes and shift_nm > 0 else (0.0,)
+    wedge_signs = (-1.0, 1.0) if has_fringes and spread > 0 else (0.0,)
+    nodes = []
+    for slit_sign in slit_signs:
+        at = optics.shifted(slit_sign * shift_nm) if slit_sign else optics
+        for wedge_sign in wedge_signs:
+            stretch = 1.0 + wedge_sign * spread
+            seen = ideal(at, thickness_nm * stretch, substrate_mm, beam)
+            by_wedge = wedge_sign * np.einsum("l...w,l...->...w", seen.d_thickness, thickness_nm)
+            nodes.append((seen, stretch, slit_sign, by_wedge))
+    k = errors.scale / len(nodes)
+    value = _total([seen.value for seen, *_ in nodes])
+    return Observed(
+        value=k * value,
+        d_epsilon=k * _total([seen.d_epsilon for seen, *_ in nodes]),
+        d_thickness=k * _total([seen.d_thickness * stretch for seen, stretch, *_ in nodes]),
+        d_substrate=k * _total([seen.d_substrate for seen, *_ in nodes]),
+        d_wavelength=k * _total([seen.d_wavelength for seen, *_ in nodes]),
+        d_scale=value / len(nodes),
+        d_slit=(k * TRIANGLE_SIGMA_PER_FWHM) * _total([sign * seen.d_wavelength for seen, _, sign, _ in nodes]),
+        d_wedge=(k * UNIFORM_SIGMA_PER_HALF_WIDTH) * _total([by_wedge for *_, by_wedge in nodes]),
+    )
+
+
+def _total(parts: list[Any]) -> Any:
+    """Return the sum of arrays of one shape, without a copy where there is one only."""
+    total = parts[0]
+    for part in parts[1:]:
+        total = total + part
+    return total

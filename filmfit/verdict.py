@@ -1,0 +1,182 @@
+"""From a fit's outcome to reasons and an answer: usable, check or unusable.
+
+Knows the limits beyond which a person must look; the words stand in reasons.py, the numbers in the fit.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from filmfit.fit.build import Built
+from filmfit.fit.choose import Outcome
+from filmfit.fit.problem import Parameter
+from filmfit.fit.scan import Scan
+from filmfit.fit.solve import Solution
+from filmfit.reasons import ORDER, TABLE, best_answer, reason
+from filmfit.result import Answer, Quantity, Reason, Results
+from filmfit.runfile.load import RunFile
+from filmfit.stack import FloatArray
+
+RIVAL_BIC = 10.0  # evidence above it is decisive: Kass and Raftery, J. Am. Stat. Assoc. 90, 773 (1995), table p. 777
+NUISANCE_SIGMAS = 3.0
+STRUCTURE_GROWTH = 2.0  # chi2 per point that noise and a free law cannot explain
+POOR_RMS = 0.02
+OPAQUE_TRANSMITTANCE = 0.005
+COUPLED_RELATIVE_SIGMA = 0.02
+SUM_SIGMAS = 3.0
+THIN_SUBSTRATE_MM = 0.2
+BOUND_SHARE = 1e-3
+LARGEST_TMM_DIFFERENCE = 1e-6
+
+
+@dataclass(frozen=True)
+class Fit:
+    """A scan's reading by the model beside what was measured, fractions (W,)."""
+
+    scan: Scan
+    fitted: FloatArray
+
+    @property
+    def rms(self) -> float:
+        """Root mean square of measured minus fitted, fraction."""
+        return float(np.sqrt(np.mean((self.scan.values - self.fitted) ** 2)))
+
+
+def judge(
+    file: RunFile, built: Built, outcome: Outcome, fits: list[Fit], results: Results, difference: float | None
+) -> tuple[list[Reason], Answer]:
+    """Return all reasons, the gravest first, and the best answer that they leave.
+
+    Args:
+        file: the run file.
+        built: what was fitted.
+        outcome: the chosen fit and its rivals.
+        fits: each scan beside its fit.
+        results: quantities of the main layer.
+        difference: largest difference to the independent code, None where not compared.
+    """
+    scans = [fit.scan for fit in fits]
+    source = built.starting[0]
+    reasons = fit_reasons(outcome, fits)
+    reasons += parameter_reasons(outcome.solution)
+    reasons += scan_reasons(scans, float(np.hypot(*_scale_sigmas(file))))
+    expectation = source.index_550 if source is not None and built.problem.index_expectations else None
+    reasons += thickness_reasons(
+        results.thickness_nm, (expectation.value, expectation.sigma) if expectation else None, scans
+    )
+    reasons += quantity_reasons(results, outcome.solution.problem.runs[0].layers[built.main[0][1]].law_names, scans)
+    for name, low, high in built.left_out:
+        reasons.append(reason("outside-material-range", material=name, low=low, high=high))
+    if file.content.substrate.thickness_mm < THIN_SUBSTRATE_MM:
+        reasons.append(reason("thin-substrate", thickness_mm=file.content.substrate.thickness_mm))
+    depth = results.thickness_nm
+    limit_nm = source.continuous_above_nm if source is not None else None
+    if limit_nm is not None and depth is not None and depth.value is not None and depth.value < limit_nm:
+        reasons.append(reason("not-a-continuous-film", "thickness_nm", thickness_nm=depth.value))
+    if difference is not None and difference > LARGEST_TMM_DIFFERENCE:
+        reasons.append(reason("not-crosschecked", difference=difference))
+    reasons.sort(key=lambda one: -ORDER.index(TABLE[one.code].allows))
+    return reasons, best_answer([one.code for one in reasons])
+
+
+def _scale_sigmas(file: RunFile) -> tuple[float, float]:
+    """Return the trusted scale errors of R and T."""
+    return file.content.instrument.scale_sigma_R, file.content.instrument.scale_sigma_T
+
+
+def quantity_reasons(results: Results, laws: tuple[str, ...], scans: list[Scan]) -> list[Reason]:
+    """Return why a quantity that the film's law could give is left open."""
+    reasons = []
+    longest = max(float(scan.wavelength_nm[-1]) for scan in scans if scan.coated)
+    if "drude" in laws:
+        if results.plasma_energy_eV is None:
+            reasons.append(reason("carriers-not-determined", "plasma_energy_eV", longest_nm=longest))
+        elif results.resistivity_ohm_cm is None:
+            reasons.append(reason("damping-not-determined", "resistivity_ohm_cm"))
+    if "tauc-lorentz" in laws and results.energy_at_1e4_eV is None:
+        reasons.append(reason("gap-not-determined", "energy_at_1e4_eV"))
+    if results.gap_direct_eV is not None and results.gap_direct_eV.value is None:
+        reasons.append(reason("no-linear-part", "gap_direct_eV"))
+    return reasons
+
+
+def fit_reasons(outcome: Outcome, fits: list[Fit]) -> list[Reason]:
+    """Return what the fit's quality and its rivals say."""
+    reasons = []
+    worst = max(fits, key=lambda fit: fit.rms)
+    chi2_per_point = outcome.solution.chi2 / outcome.solution.problem.points
+    if worst.rms > POOR_RMS:
+        reasons.append(reason("poor-fit", rms=worst.rms))
+    elif chi2_per_point > STRUCTURE_GROWTH:
+        reasons.append(reason("residual-structure", times=chi2_per_point**0.5))
+    for rival in outcome.rivals:
+        if rival.delta_bic < RIVAL_BIC:
+            reasons.append(
+                reason("rival-thickness", "thickness_nm", rival=rival.thickness_nm, delta_bic=rival.delta_bic)
+            )
+    return reasons
+
+
+def parameter_reasons(solution: Solution) -> list[Reason]:
+    """Return what single parameters say: nuisances far from what is trusted, laws on a bound."""
+    reasons = []
+    for index in solution.problem.free:
+        p, value = solution.problem.parameters[index], float(solution.values[index])
+        scope, name = p.name.partition(".")[0], p.name.rpartition(".")[2]
+        if ".correction." in p.name:
+            continue
+        if scope in ("instrument", "plate") and p.sigma is not None:
+            expected = p.expected if p.expected is not None else p.start
+            sigmas = abs(value - expected) / p.sigma
+            if sigmas > NUISANCE_SIGMAS:
+                if scope == "plate":
+                    reasons.append(
+                        reason("substrate-mismatch", material="what was declared", what=f"{name} is {value:.3g}")
+                    )
+                else:
+                    reasons.append(reason("nuisance-far-off", nuisance=name, sigmas=sigmas))
+        elif scope in ("layer", "material") and _on_bound(p, value):
+            bound = p.low if value - p.low < p.high - value else p.high
+            reasons.append(reason("at-a-bound", parameter=p.name.partition("/")[2] or p.name, bound=bound))
+    return reasons
+
+
+def _on_bound(parameter: Parameter, value: float) -> bool:
+    """Say whether a value ended on one of its bounds."""
+    span = parameter.high - parameter.low
+    return bool(np.isfinite(span)) and min(value - parameter.low, parameter.high - value) < BOUND_SHARE * span
+
+
+def scan_reasons(scans: list[Scan], scale_sigma: float) -> list[Reason]:
+    """Return what the measured numbers say by themselves: R + T above 1, an opaque film."""
+    reasons = []
+    coated = [scan for scan in scans if scan.coated]
+    transmitted = [scan for scan in coated if scan.beam.quantity == "T"]
+    reflected = [scan for scan in coated if scan.beam.quantity == "R" and scan.beam.side == "film"]
+    for t in transmitted[:1]:
+        for r in reflected[:1]:
+            common = t.wavelength_nm[(t.wavelength_nm >= r.wavelength_nm[0]) & (t.wavelength_nm <= r.wavelength_nm[-1])]
+            total = np.interp(common, t.wavelength_nm, t.values) + np.interp(common, r.wavelength_nm, r.values)
+            noise = float(np.hypot(t.sigma[0], r.sigma[0]))
+            excess = total - 1 - SUM_SIGMAS * (scale_sigma + noise)
+            if common.size and excess.max() > 0:
+                at = int(np.argmax(excess))
+                reasons.append(reason("sum-above-one", excess=float(total[at] - 1), wavelength_nm=float(common[at])))
+    return reasons
+
+
+def thickness_reasons(
+    thickness: Quantity | None, expectation: tuple[float, float] | None, scans: list[Scan]
+) -> list[Reason]:
+    """Return what the thickness's own interval says."""
+    reasons = []
+    transmitted = [scan for scan in scans if scan.coated and scan.beam.quantity == "T"]
+    if transmitted:
+        highest = max(float(np.max(scan.values)) for scan in transmitted)
+        if highest < OPAQUE_TRANSMITTANCE:
+            reasons.append(reason("nearly-opaque", "thickness_nm", transmittance=max(highest, 1e-4)))
+    if thickness is None:
+        reasons.append(reason("thickness-not-determined", "thickness_nm"))
+    elif expectation is not None and (thickness.sigma or 0.0) > COUPLED_RELATIVE_SIGMA * (thickness.value or 1.0):
+        reasons.append(reason("thickness-index-coupled", "thickness_nm", index=expectation[0], sigma=expectation[1]))
+    return reasons
