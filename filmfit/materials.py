@@ -4,7 +4,7 @@ Knows how to read and check a material; does not know films or fits. A file with
 
 A file holds `name`, `kind` (fixed: known constants; starting: where a fit of such a film begins), `description`,
 `valid_nm`, `reference`, `origin` (measured, handbook, memory); then `laws` with `[parameters]` by full name
-({ value, low, high }), or `[[table]]` blocks (reference, wavelength_nm, n, k), the first of which is the material and
+({ value, low, high, sigma: spread of the expected value }), or `[[table]]` blocks (reference, wavelength_nm, n, k), the first of which is the material and
 the others further published tables of it. Films may add `[index_550]` and `[effective_mass]` (value, sigma,
 reference) and `continuous_above_nm`; a metal that is both gives its law under `[starting]`.
 """
@@ -42,11 +42,12 @@ class Expectation:
 
 @dataclass(frozen=True)
 class Start:
-    """Where a law's parameter begins, and between which bounds it may move."""
+    """Where a law's parameter begins, its bounds, and how far it is expected from there (None: anywhere)."""
 
     value: float
     low: float
     high: float
+    sigma: float | None = None
 
 
 @dataclass(frozen=True)
@@ -239,7 +240,8 @@ class _Reader:
         high = self.number(name, block.get("high", value))
         if not low <= value <= high:
             raise self.fault(name, f"{value:g} outside {low:g}..{high:g}")
-        return Start(value, low, high)
+        sigma = block.get("sigma")
+        return Start(value, low, high, None if sigma is None else self.number(name, sigma))
 
     def expectation(self, content: dict[str, Any], key: str) -> Expectation | None:
         block = content.get(key)

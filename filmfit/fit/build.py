@@ -311,7 +311,7 @@ def _parameter(name: str, begins: Start, given: float | Value | None) -> Paramet
         ValueError: what the run file says leaves no room.
     """
     if given is None:
-        return Parameter(name, begins.value, begins.low, begins.high)
+        return Parameter(name, begins.value, begins.low, begins.high, begins.value, begins.sigma)
     if isinstance(given, float | int):
         return Parameter(name, float(given), float(given) - 1.0, float(given) + 1.0, vary=False)
     low = begins.low if given.low is None else given.low

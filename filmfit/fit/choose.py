@@ -8,7 +8,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from filmfit.fit.discrepancy import corrected
+from filmfit.fit.discrepancy import Freedom, corrected
 from filmfit.fit.problem import Problem
 from filmfit.fit.solve import Solution, solve
 from filmfit.fit.start import SAME_NM, SAME_RATIO, search, searchable
@@ -19,8 +19,13 @@ log = logging.getLogger("filmfit.fit")
 RANKING_POINTS = 250  # a scan's points while rivals are compared
 REFINED = 4  # trials refined with the law alone
 CONTENDERS = 3  # of them, compared with the correction too
-RANKING_SIZE = 0.1
-SIZES = (0.03, 0.1, 0.3)  # expected relative size of the law's correction
+# How free the law's correction may be while rivals are compared, and in the end; more only where less falls short.
+RANKING = Freedom(0.1)
+RANKING_BANDS = Freedom(1.0, bands=True)
+FREEDOMS = (Freedom(0.03), Freedom(0.1), Freedom(0.3))
+BAND_FREEDOMS = (Freedom(0.3, bands=True), Freedom(1.0, bands=True), Freedom(3.0, bands=True))
+FALLS_SHORT = 1.5  # chi2 per point
+LAW_FAILS = 100.0  # chi2 per point of the best minimum with the law alone
 HOPELESS = 30.0  # a trial whose chi2 is this many times the best one's is not refined
 
 
@@ -38,15 +43,13 @@ class Outcome:
 
     Args:
         solution: of the chosen model, on all points.
-        plain: of the law alone, on all points.
-        correction_size: expected relative size of the law's correction, 0 where the law alone is supported.
+        freedom: of the law's correction; None where the law alone is supported.
         thickness: index of the main thickness among the parameters.
         rivals: other minima, nearest first.
     """
 
     solution: Solution
-    plain: Solution
-    correction_size: float
+    freedom: Freedom | None
     thickness: int
     rivals: tuple[Rival, ...]
 
@@ -74,14 +77,44 @@ def choose(problem: Problem, main: tuple[int, int], hint_nm: float | None = None
     run, layer = main
     thickness = problem.runs[run].layers[layer].thickness
     ranking = problem.thinned(RANKING_POINTS)
-    ranked = _ranked(ranking, _refined(ranking, thickness, hint_nm), main)
+    refined = _refined(ranking, thickness, hint_nm)
+    if refined[0].chi2 > LAW_FAILS * refined[0].problem.points:
+        log.info("no thickness fits with the law alone: absorption bands are allowed from the start")
+        return _choose_with_bands(problem, main, thickness, hint_nm)
+    ranked = _ranked(ranking, refined, main)
     plain = solve(problem.started(ranked[0].plain.values))
-    solution, size = _with_correction(plain, main)
-    rivals = tuple(
-        Rival(float(other.flexible.values[thickness]), badness(other.flexible) - badness(ranked[0].flexible))
-        for other in ranked[1:]
+    solution, freedom = _with_correction(plain, main)
+    return Outcome(solution, freedom, thickness, _rivals([one.flexible for one in ranked], thickness))
+
+
+def _choose_with_bands(problem: Problem, main: tuple[int, int], thickness: int, hint_nm: float | None) -> Outcome:
+    """Return the best-supported thickness where the law alone fails everywhere: the correction joins the search."""
+    anchor = _unfitted(problem)
+    ranking = corrected(_unfitted(problem.thinned(RANKING_POINTS)), *main, RANKING_BANDS)
+    ranked = sorted(
+        (solve(ranking.started(one.values)) for one in _refined(ranking, thickness, hint_nm)[:CONTENDERS]), key=badness
     )
-    return Outcome(solution, plain, size, thickness, rivals)
+    values = ranked[0].values
+    found = []
+    for freedom in BAND_FREEDOMS:
+        solution = solve(corrected(anchor, *main, freedom).started(values))
+        values = solution.values
+        found.append((badness(solution), solution, freedom))
+    _, solution, freedom = min(found, key=lambda row: row[0])
+    return Outcome(solution, freedom, thickness, _rivals(ranked, thickness))
+
+
+def _unfitted(problem: Problem) -> Solution:
+    """Return a problem's starting values in the form of a solution."""
+    free = len(problem.free)
+    return Solution(problem, problem.start_values(), np.eye(free), np.inf, 0)
+
+
+def _rivals(ranked: list[Solution], thickness: int) -> tuple[Rival, ...]:
+    """Return all but the best of ranked solutions by thickness and evidence."""
+    return tuple(
+        Rival(float(other.values[thickness]), badness(other) - badness(ranked[0])) for other in ranked[1:]
+    )
 
 
 @dataclass(frozen=True)
@@ -112,22 +145,33 @@ def _ranked(problem: Problem, solutions: list[Solution], main: tuple[int, int]) 
     contenders = []
     for solution in solutions[:CONTENDERS]:
         plain = solve(problem.started(solution.values))
-        flexible = solve(corrected(plain, *main, RANKING_SIZE))
+        flexible = solve(corrected(plain, *main, RANKING))
         log.info("contender: badness %.0f alone, %.0f corrected", badness(plain), badness(flexible))
         contenders.append(_Contender(plain, flexible))
+    if all(_falls_short(contender.flexible) for contender in contenders):
+        contenders = [
+            _Contender(one.plain, min(one.flexible, solve(corrected(one.plain, *main, RANKING_BANDS)), key=badness))
+            for one in contenders
+        ]
     return sorted(contenders, key=lambda contender: badness(contender.flexible))
 
 
-def _with_correction(plain: Solution, main: tuple[int, int]) -> tuple[Solution, float]:
-    """Return the solution of the best-supported size of correction, and that size (0: none)."""
-    best, best_size = plain, 0.0
-    start: FloatArray | None = None
-    for size in SIZES:
-        problem = corrected(plain, *main, size)
-        if start is not None:
-            problem = problem.started(start)
-        found = solve(problem)
-        start = found.values
-        if badness(found) < badness(best):
-            best, best_size = found, size
-    return best, best_size
+def _falls_short(solution: Solution) -> bool:
+    """Say whether a fit misses the data by more than their noise."""
+    return solution.chi2 > FALLS_SHORT * solution.problem.points
+
+
+def _with_correction(plain: Solution, main: tuple[int, int]) -> tuple[Solution, Freedom | None]:
+    """Return the solution of the best-supported correction, and how free that is (None: no correction)."""
+    best, best_freedom = plain, None
+    for freedoms in (FREEDOMS, BAND_FREEDOMS):
+        start: FloatArray | None = None
+        for freedom in freedoms:
+            problem = corrected(plain, *main, freedom)
+            found = solve(problem if start is None else problem.started(start))
+            start = found.values
+            if badness(found) < badness(best):
+                best, best_freedom = found, freedom
+        if not _falls_short(best):
+            break
+    return best, best_freedom

@@ -10,13 +10,14 @@ import numpy as np
 
 from filmfit.dispersion.compose import Dispersion
 from filmfit.dispersion.correction import Correction, hat_epsilon
-from filmfit.fit.model import LayerModel
+from filmfit.fit.model import LayerModel, RunModel
 from filmfit.fit.problem import Parameter, Problem
 from filmfit.fit.solve import Solution
 from filmfit.stack import ComplexArray, FloatArray
 from filmfit.units import HC_EV_NM
 
 CORRELATION_EV = 1.0  # over which the correction keeps its sign
+BAND_CORRELATION_EV = 0.3  # the same where narrow absorption bands must be allowed for
 FINE_EV = 0.08  # spacing of knots at the absorption edge
 EDGE_MARGIN_EV = 0.6  # how far below the gap the edge begins
 COARSE_RATIO = 0.18  # spacing of knots below the edge, as a share of the energy
@@ -51,16 +52,24 @@ class CorrectedDispersion:
         return epsilon + added, np.concatenate([gradient, spread])
 
 
-def corrected(solution: Solution, run: int, layer: int, size: float) -> Problem:
+@dataclass(frozen=True)
+class Freedom:
+    """How free a correction is: its expected size relative to the law, and whether it may hold narrow bands."""
+
+    size: float
+    bands: bool = False
+
+
+def corrected(solution: Solution, run: int, layer: int, freedom: Freedom) -> Problem:
     """Return the problem with a free correction to one layer's law, started at a solution without it.
 
     The correction to epsilon2 at a knot is expected to be `size` times the law's own epsilon2 there (plus a floor),
-    with a correlation that falls off exponentially over 1 eV.
+    with a correlation that falls off exponentially over 1 eV, or 0.3 eV where it may hold narrow bands.
 
     Args:
         solution: where the fit of the law alone ended.
         run, layer: which layer of which run.
-        size: expected relative size of the correction.
+        freedom: how large and how narrow it may be.
 
     Reference: model discrepancy as a Gaussian process: Kennedy and O'Hagan, J. R. Stat. Soc. B 63, 425 (2001);
         tests/recovery/.
@@ -69,7 +78,7 @@ def corrected(solution: Solution, run: int, layer: int, size: float) -> Problem:
     target = problem.runs[run].layers[layer]
     assert isinstance(target.dispersion, Dispersion)
     wavelength_nm = np.concatenate([scan.wavelength_nm for scan in problem.runs[run].scans if scan.coated])
-    correction = _correction(target.dispersion, solution.values[target.laws], wavelength_nm, size)
+    correction = _correction(target.dispersion, solution.values[target.laws], wavelength_nm, freedom)
     first = len(problem.parameters)
     added = tuple(
         Parameter(f"layer.{problem.runs[run].run}/{target.name}.correction.{number}", 0.0, -LARGEST, LARGEST, 0.0, 1.0)
@@ -80,22 +89,23 @@ def corrected(solution: Solution, run: int, layer: int, size: float) -> Problem:
     return replace(problem, parameters=problem.parameters + added, runs=_with_layer(problem, run, layer, changed))
 
 
-def _with_layer(problem: Problem, run: int, layer: int, changed: LayerModel):  # type: ignore[no-untyped-def]
+def _with_layer(problem: Problem, run: int, layer: int, changed: LayerModel) -> tuple[RunModel, ...]:
     """Return the problem's runs with one layer replaced."""
     layers = problem.runs[run].layers
     new = replace(problem.runs[run], layers=(*layers[:layer], changed, *layers[layer + 1 :]))
     return (*problem.runs[:run], new, *problem.runs[run + 1 :])
 
 
-def _correction(law: Dispersion, values: FloatArray, wavelength_nm: FloatArray, size: float) -> Correction:
+def _correction(law: Dispersion, values: FloatArray, wavelength_nm: FloatArray, freedom: Freedom) -> Correction:
     """Return the tabulated functions of unit-variance coefficients."""
     gaps = [value for name, value in zip(law.names, values, strict=True) if name.endswith(".gap_eV")]
     shortest, longest = float(wavelength_nm.min()), float(wavelength_nm.max())
-    knots = _knots(HC_EV_NM / longest, HC_EV_NM / shortest, min(gaps, default=np.inf))
+    edge_eV = 0.0 if freedom.bands else min(gaps, default=np.inf)
+    knots = _knots(HC_EV_NM / longest, HC_EV_NM / shortest, edge_eV)
     inner = knots[1:-1]
     epsilon2 = law.evaluate(inner, values[:, None])[0].imag
-    correlation = np.exp(-np.abs(inner[:, None] - inner) / CORRELATION_EV)
-    mixing = size * (epsilon2 + FLOOR)[:, None] * np.linalg.cholesky(correlation)
+    correlation = np.exp(-np.abs(inner[:, None] - inner) / (BAND_CORRELATION_EV if freedom.bands else CORRELATION_EV))
+    mixing = freedom.size * (epsilon2 + FLOOR)[:, None] * np.linalg.cholesky(correlation)
     table_nm = np.arange(shortest - 10, longest + 10 + TABLE_STEP_NM, TABLE_STEP_NM)[::-1]
     energy_eV = HC_EV_NM / table_nm
     return Correction(energy_eV, mixing.T @ hat_epsilon(energy_eV, knots))

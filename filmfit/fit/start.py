@@ -18,6 +18,13 @@ THIN_RATIO = 1.15  # spacing of trials while a film is thinner than a fringe
 STEP_NM = 30.0  # and beyond: an eighth of a fringe order at 450 nm and index 1.9
 PLASMA_SEEDS_EV = (0.5, 1.2, 1.9)
 
+# Tauc-Lorentz films without carriers, index about 1.5, 1.9 and 2.4
+INDEX_SEEDS: tuple[dict[str, float], ...] = (
+    {".constant.epsilon": 1.2, ".amplitude_eV": 60.0, ".peak_eV": 9.0, ".gap_eV": 5.0},
+    {".constant.epsilon": 1.8, ".amplitude_eV": 120.0, ".peak_eV": 7.0, ".gap_eV": 4.0},
+    {".constant.epsilon": 2.0, ".amplitude_eV": 250.0, ".peak_eV": 5.0, ".gap_eV": 3.2},
+)
+
 COARSE_POINTS = 60
 COARSE_STEPS = 8
 MIDDLE_TRIALS = 48
@@ -83,15 +90,19 @@ def _starts(problem: Problem, thickness: int, hint_nm: float | None) -> FloatArr
 
 
 def _law_seeds(problem: Problem) -> Sequence[Sequence[tuple[int, float]]]:
-    """Return alternative starting values of the laws: few to many carriers where a film may have both."""
+    """Return alternative starting values of the laws: few to many carriers, or low to high index without any."""
+    free = {p.name: index for index, p in enumerate(problem.parameters) if p.vary}
     plasma = [
         index
-        for index, p in enumerate(problem.parameters)
-        if p.vary and p.name.endswith(".drude.plasma_eV") and p.low < PLASMA_SEEDS_EV[0]
+        for name, index in free.items()
+        if name.endswith(".drude.plasma_eV") and problem.parameters[index].low < PLASMA_SEEDS_EV[0]
     ]
-    if not plasma:
-        return [()]
-    return [[(index, seed) for index in plasma] for seed in PLASMA_SEEDS_EV]
+    if plasma:
+        return [[(index, seed) for index in plasma] for seed in PLASMA_SEEDS_EV]
+    return [
+        [(index, value) for name, index in free.items() for ending, value in seed.items() if name.endswith(ending)]
+        for seed in (INDEX_SEEDS if any(name.endswith(".tauc-lorentz.gap_eV") for name in free) else ({},))
+    ]
 
 
 def _distinct(trials: Trials, row: int, keep: int, each: int) -> FloatArray:
