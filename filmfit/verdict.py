@@ -19,6 +19,7 @@ from filmfit.stack import FloatArray
 
 RIVAL_BIC = 10.0  # evidence above it is decisive: Kass and Raftery, J. Am. Stat. Assoc. 90, 773 (1995), table p. 777
 NUISANCE_SIGMAS = 3.0
+WATCHED = ("scale_R", "scale_T", "offset_nm", "index_shift", "absorbance_factor", "absorbance_shift")
 STRUCTURE_GROWTH = 2.0  # chi2 per point that noise and a free law cannot explain
 POOR_RMS = 0.02
 OPAQUE_TRANSMITTANCE = 0.005
@@ -125,7 +126,7 @@ def parameter_reasons(solution: Solution) -> list[Reason]:
         scope, name = p.name.partition(".")[0], p.name.rpartition(".")[2]
         if ".correction." in p.name:
             continue
-        if scope in ("instrument", "plate") and p.sigma is not None:
+        if name in WATCHED and p.sigma is not None:
             expected = p.expected if p.expected is not None else p.start
             sigmas = abs(value - expected) / p.sigma
             if sigmas > NUISANCE_SIGMAS:

@@ -22,7 +22,8 @@ CONTENDERS = 3  # of them, compared with the correction too
 # How free the law's correction may be while rivals are compared, and in the end; more only where less falls short.
 RANKING = Freedom(0.1)
 RANKING_BANDS = Freedom(1.0, bands=True)
-FREEDOMS = (Freedom(0.03), Freedom(0.1), Freedom(0.3))
+# No film obeys a law to better than a percent, so there is always a little.
+FREEDOMS = (Freedom(0.01), Freedom(0.03), Freedom(0.1), Freedom(0.3))
 BAND_FREEDOMS = (Freedom(0.3, bands=True), Freedom(1.0, bands=True), Freedom(3.0, bands=True))
 FALLS_SHORT = 1.5  # chi2 per point
 LAW_FAILS = 100.0  # chi2 per point of the best minimum with the law alone
@@ -43,13 +44,13 @@ class Outcome:
 
     Args:
         solution: of the chosen model, on all points.
-        freedom: of the law's correction; None where the law alone is supported.
+        freedom: of the law's correction.
         thickness: index of the main thickness among the parameters.
         rivals: other minima, nearest first.
     """
 
     solution: Solution
-    freedom: Freedom | None
+    freedom: Freedom
     thickness: int
     rivals: tuple[Rival, ...]
 
@@ -161,17 +162,17 @@ def _falls_short(solution: Solution) -> bool:
     return solution.chi2 > FALLS_SHORT * solution.problem.points
 
 
-def _with_correction(plain: Solution, main: tuple[int, int]) -> tuple[Solution, Freedom | None]:
-    """Return the solution of the best-supported correction, and how free that is (None: no correction)."""
-    best, best_freedom = plain, None
+def _with_correction(plain: Solution, main: tuple[int, int]) -> tuple[Solution, Freedom]:
+    """Return the solution of the best-supported correction, and how free that is."""
+    found: list[tuple[float, Solution, Freedom]] = []
     for freedoms in (FREEDOMS, BAND_FREEDOMS):
         start: FloatArray | None = None
         for freedom in freedoms:
             problem = corrected(plain, *main, freedom)
-            found = solve(problem if start is None else problem.started(start))
-            start = found.values
-            if badness(found) < badness(best):
-                best, best_freedom = found, freedom
-        if not _falls_short(best):
+            solution = solve(problem if start is None else problem.started(start))
+            start = solution.values
+            found.append((badness(solution), solution, freedom))
+        if not _falls_short(min(found, key=lambda row: row[0])[1]):
             break
-    return best, best_freedom
+    _, solution, freedom = min(found, key=lambda row: row[0])
+    return solution, freedom

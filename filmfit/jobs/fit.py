@@ -265,11 +265,10 @@ def _summary(outcome: Outcome, fits: list[Fit], seconds: float) -> FitSummary:
         parts = [fit.rms**2 for fit in fits if fit.scan.coated and fit.scan.beam.quantity == quantity]
         rms[quantity] = float(np.sqrt(np.mean(parts))) if parts else None
     layer = solution.problem.runs[0].layers[-1]
-    freedom = outcome.freedom
     laws = dict.fromkeys(name.partition(".")[0] for name in layer.dispersion.names) if layer.dispersion else {}
     model = " + ".join(name for name in laws if name != "correction")
     return FitSummary(
-        model=model + (f" + causal correction of about {100 * freedom.size:g} %" if freedom else ""),
+        model=f"{model} + causal correction of about {100 * outcome.freedom.size:g} %",
         reduced_chi2=solution.reduced_chi2,
         rms_R=rms["R"],
         rms_T=rms["T"],
