@@ -198,7 +198,7 @@ def _slope(values: ComplexArray, wavelength_nm: FloatArray) -> ComplexArray:
     """Return d values / d wavelength (..., W) in 1/nm."""
     if values.shape[0] == 0:
         return values
-    slope: ComplexArray = np.gradient(values, wavelength_nm, axis=-1)
+    slope: ComplexArray = np.gradient(values, wavelength_nm, axis=-1, edge_order=2)
     return slope
 
 
