@@ -120,7 +120,7 @@ class _Reader:
         self.path = path
         self.lines = lines_of(text)
         self.faults: list[FilmfitError] = []
-        self.written: dict[Key, Key] = {}  # inside key -> key as the user wrote it
+        self.written: dict[Key, tuple[Key, Any]] = {}  # inside key -> key and value as the user wrote them
 
     def add(self, key: Key, found: str, allowed: str = "", do: str = "") -> None:
         self.faults.append(RunFileError(_place(self.path, self.lines, key), found, allowed, do))
@@ -135,7 +135,7 @@ class _Reader:
                 for key in given[:1]:
                     value = table.pop(key)
                     table[INSIDE[stem]] = _scaled(value, SUFFIXES[key.rpartition("_")[2]].factor)
-                    self.written[(*at, INSIDE[stem])] = (*at, key)
+                    self.written[(*at, INSIDE[stem])] = ((*at, key), value)
                 for key in given[1:]:
                     table.pop(key)
 
@@ -153,10 +153,10 @@ class _Reader:
     def fault(self, detail: ErrorDetails) -> FilmfitError:
         """Return one fault of the content's check as a located sentence."""
         key = tuple(part for part in detail["loc"] if not _is_type(part))
-        key = self.written.get(key, key)
+        key, given = self.written.get(key, (key, detail["input"]))
         last = str(key[-1]) if key else ""
         place = _place(self.path, self.lines, key)
-        kind, given = detail["type"], detail["input"]
+        kind = detail["type"]
         if kind == "missing":
             return RunFileError(place, "is missing", do=f"add {last}")
         if kind == "extra_forbidden":
@@ -169,6 +169,8 @@ class _Reader:
             if given in LATER_VALUES.get(last, ()):
                 return RunFileError(place, f"'{given}' is not supported yet", str(detail["ctx"]["expected"]))
             return RunFileError(place, f"{given!r}", str(detail["ctx"]["expected"]))
+        if kind == "string_pattern_mismatch":
+            return RunFileError(place, f"{_short(given)}", "letters, digits, '.', '_' and '-', a letter or digit first")
         if kind == "value_error":
             return RunFileError(place, detail["msg"].removeprefix("Value error, "))
         return RunFileError(place, f"{_short(given)}", detail["msg"].removeprefix("Input should be ").lower())
@@ -213,7 +215,7 @@ def _scaled(value: Any, factor: float) -> Any:
         return {key: _scaled(one, factor) for key, one in value.items()}
     if isinstance(value, bool) or not isinstance(value, int | float):
         return value
-    return value * factor
+    return value if factor == 1 else value * factor
 
 
 def _known_keys(at: Key) -> list[str]:
