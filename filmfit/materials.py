@@ -4,9 +4,10 @@ Knows how to read and check a material; does not know films or fits. A file with
 
 A file holds `name`, `kind` (fixed: known constants; starting: where a fit of such a film begins), `description`,
 `valid_nm`, `reference`, `origin` (measured, handbook, memory); then `laws` with `[parameters]` by full name
-({ value, low, high, sigma: spread of the expected value }), or `[[table]]` blocks (reference, wavelength_nm, n, k), the first of which is the material and
-the others further published tables of it. Films may add `[index_550]` and `[effective_mass]` (value, sigma,
-reference) and `continuous_above_nm`; a metal that is both gives its law under `[starting]`.
+({ value, low, high, sigma }; sigma where the value is expected), or `[[table]]` blocks (reference, wavelength_nm, n,
+k), the first of which is the material and the others further published tables of it. Films may add `[index_550]` and
+`[effective_mass]` (value, sigma, reference) and `continuous_above_nm`; a metal that is both gives its law under
+`[starting]`.
 """
 
 import tomllib

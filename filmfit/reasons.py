@@ -98,6 +98,21 @@ TABLE: dict[str, Entry] = {
         "measure further into the ultraviolet, on silica if need be",
         "usable",
     ),
+    "four-point-compared": Entry(
+        "the four-point probe reads {probe:.4g} ohm, {sigmas:.1f} sigma from the optical value",
+        "a higher probe value is usual where grain boundaries or a surface layer hinder direct current",
+        "usable",
+    ),
+    "step-height-compared": Entry(
+        "the measured step is {step_nm:.1f} nm, {percent:+.1f} % from the fitted outer surface",
+        "beyond a few percent look for a rough or uneven film, or a step in another place",
+        "usable",
+    ),
+    "hall-mass": Entry(
+        "with the Hall density the optical plasma energy means an effective mass of {mass:.3f}",
+        "compare it with the mass that was used",
+        "usable",
+    ),
     "not-a-continuous-film": Entry(
         "a silver film of {thickness_nm:.1f} nm may not be continuous: bulk constants do not hold",
         "take the number as a mass-equivalent thickness",

@@ -3,19 +3,17 @@
 Knows the limits beyond which a person must look; the words stand in reasons.py, the numbers in the fit.
 """
 
-from dataclasses import dataclass
-
 import numpy as np
 
 from filmfit.fit.build import Built
 from filmfit.fit.choose import Outcome
 from filmfit.fit.problem import Parameter
-from filmfit.fit.scan import Scan
+from filmfit.fit.scan import Reading, Scan
 from filmfit.fit.solve import Solution
+from filmfit.quantities.carriers import carrier_density_cm3
 from filmfit.reasons import ORDER, TABLE, best_answer, reason
 from filmfit.result import Answer, Quantity, Reason, Results
 from filmfit.runfile.load import RunFile
-from filmfit.stack import FloatArray
 
 RIVAL_BIC = 10.0  # evidence above it is decisive: Kass and Raftery, J. Am. Stat. Assoc. 90, 773 (1995), table p. 777
 NUISANCE_SIGMAS = 3.0
@@ -30,21 +28,8 @@ BOUND_SHARE = 1e-3
 LARGEST_TMM_DIFFERENCE = 1e-6
 
 
-@dataclass(frozen=True)
-class Fit:
-    """A scan's reading by the model beside what was measured, fractions (W,)."""
-
-    scan: Scan
-    fitted: FloatArray
-
-    @property
-    def rms(self) -> float:
-        """Root mean square of measured minus fitted, fraction."""
-        return float(np.sqrt(np.mean((self.scan.values - self.fitted) ** 2)))
-
-
 def judge(
-    file: RunFile, built: Built, outcome: Outcome, fits: list[Fit], results: Results, difference: float | None
+    file: RunFile, built: Built, outcome: Outcome, fits: list[Reading], results: Results, difference: float | None
 ) -> tuple[list[Reason], Answer]:
     """Return all reasons, the gravest first, and the best answer that they leave.
 
@@ -71,6 +56,7 @@ def judge(
     if file.content.substrate.thickness_mm < THIN_SUBSTRATE_MM:
         reasons.append(reason("thin-substrate", thickness_mm=file.content.substrate.thickness_mm))
     depth = results.thickness_nm
+    reasons += comparison_reasons(file, results)
     limit_nm = source.continuous_above_nm if source is not None else None
     if limit_nm is not None and depth is not None and depth.value is not None and depth.value < limit_nm:
         reasons.append(reason("not-a-continuous-film", "thickness_nm", thickness_nm=depth.value))
@@ -101,7 +87,30 @@ def quantity_reasons(results: Results, laws: tuple[str, ...], scans: list[Scan])
     return reasons
 
 
-def fit_reasons(outcome: Outcome, fits: list[Fit]) -> list[Reason]:
+def comparison_reasons(file: RunFile, results: Results) -> list[Reason]:
+    """Return what other measurements of the run say beside the optical ones."""
+    reasons = []
+    probes, step_nm = file.content.electrical, file.content.run.step_nm
+    optical = results.sheet_resistance_ohm
+    if probes.sheet_resistance_ohm is not None and optical is not None and optical.value and optical.sigma:
+        spread = float(np.hypot(optical.sigma, probes.sheet_resistance_sigma or 0.0))
+        sigmas = abs(probes.sheet_resistance_ohm - optical.value) / spread
+        reasons.append(
+            reason("four-point-compared", "sheet_resistance_ohm", probe=probes.sheet_resistance_ohm, sigmas=sigmas)
+        )
+    top = results.top_nm
+    if step_nm is not None and top is not None and top.value:
+        reasons.append(
+            reason("step-height-compared", "top_nm", step_nm=step_nm, percent=100 * (step_nm / top.value - 1))
+        )
+    plasma = results.plasma_energy_eV
+    if probes.hall_density_cm3 is not None and plasma is not None and plasma.value:
+        mass = probes.hall_density_cm3 / carrier_density_cm3(plasma.value, 1.0)
+        reasons.append(reason("hall-mass", "carrier_density_cm3", mass=mass))
+    return reasons
+
+
+def fit_reasons(outcome: Outcome, fits: list[Reading]) -> list[Reason]:
     """Return what the fit's quality and its rivals say."""
     reasons = []
     worst = max(fits, key=lambda fit: fit.rms)

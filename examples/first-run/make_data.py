@@ -1,7 +1,8 @@
 """Make the spectra of this example: an invented oxide film on an invented glass, with an instrument's faults.
 
 The film has two interband transitions, whose dispersion is integrated numerically from their absorption, and free
-carriers: none of it is computed by filmfit. R and T come from the general-purpose package tmm. Run it again and the same bytes come out:
+carriers: none of it is computed by filmfit. R and T come from the general-purpose package tmm. Run it again and the
+same bytes come out:
 
     python make_data.py [FOLDER]
 

@@ -41,7 +41,7 @@ def main(arguments: Sequence[str] | None = None) -> None:
         if hasattr(stream, "reconfigure"):
             stream.reconfigure(errors="replace")
     try:
-        status = cli.main(args=arguments, standalone_mode=False)
+        status = cli.main(args=arguments, prog_name="filmfit", standalone_mode=False)
     except (Faults, FilmfitError) as error:
         click.echo(str(error), err=True)
         status = WRONG_USE

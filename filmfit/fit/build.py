@@ -13,19 +13,17 @@ import numpy as np
 from filmfit.dispersion.compose import Dispersion
 from filmfit.errors import Faults, FilmfitError, MaterialError, RunFileError, nearest
 from filmfit.fit.model import InstrumentModel, LayerModel, PlateModel, RunModel
+from filmfit.fit.parameters import STARTING_MODELS, free_starts, hint_nm, law_parameter, thickness_parameter
 from filmfit.fit.plate import PlateStart, plate_from_scans, plate_of_material
 from filmfit.fit.problem import IndexExpectation, Parameter, Problem
 from filmfit.fit.scan import Scan, noise_sigma
-from filmfit.materials import Material, Start, material
-from filmfit.runfile.keys import BareSpectrum, Instrument, Layer, Spectrum, Value
+from filmfit.materials import Material, material
+from filmfit.runfile.keys import BareSpectrum, Instrument, Layer, Spectrum
 from filmfit.runfile.load import RunFile
 from filmfit.spectra.spectrum import Spectrum as Measured
 from filmfit.stack import Beam
 
 GLASSES = ("soda-lime-glass", "fused-silica", "borosilicate-crown-517642")
-STARTING_MODELS = {"tco": "generic-tco", "dielectric": "generic-dielectric", "metal": "generic-metal"}
-FREE_LAW_BOUNDS = 1e3
-THICKNESS_START_NM, THICKNESS_LOW_NM, THICKNESS_HIGH_NM = 100.0, 2.0, 3500.0
 SCALE_LOW, SCALE_HIGH = 0.8, 1.2
 OFFSET_LIMIT_NM = 3.0
 # Errors that no run file states: typical values of the trade (common practice, no source).
@@ -129,7 +127,7 @@ class _Builder:
         main = (marked or fitted or [len(layers) - 1])[-1]
         self.main.append((number, main))
         self.starting.append(sources[main])
-        self.hints.append(_hint(content.layer[main]))
+        self.hints.append(hint_nm(content.layer[main]))
         source = sources[main]
         if source is not None and source.index_550 is not None and layers[main].dispersion is not None:
             self.expectations.append(
@@ -206,7 +204,7 @@ class _Builder:
         """Return a layer's model and note its parameters."""
         run_id = file.content.run.id
         stem = f"layer.{run_id}/{keys.name}"
-        thickness = self.parameter(_thickness(f"{stem}.thickness_nm", keys))
+        thickness = self.parameter(thickness_parameter(f"{stem}.thickness_nm", keys))
         if keys.material is not None:
             return LayerModel(keys.name, thickness, material=source)
         try:
@@ -227,11 +225,11 @@ class _Builder:
                     )
                 )
         owner = f"material.{keys.name}" if self.share_layers else stem
-        begins = source.parameters if source is not None else _free_starts(dispersion)
+        begins = source.parameters if source is not None else free_starts(dispersion)
         indices = []
         for name in dispersion.names:
             try:
-                made = _parameter(f"{owner}.{name}", begins[name], keys.parameters.get(name))
+                made = law_parameter(f"{owner}.{name}", begins[name], keys.parameters.get(name))
             except ValueError as error:
                 self.faults.append(RunFileError(file.where("layer", at, "parameters", name), str(error)))
                 continue
@@ -291,57 +289,3 @@ def _scan(keys: BareSpectrum | Spectrum, measured: Measured, side: str, back: st
     sigma = keys.sigma if keys.sigma is not None else noise_sigma(measured.values)
     beam = Beam(keys.quantity, keys.angle_deg, keys.polarization, side, back)  # type: ignore[arg-type]
     return Scan(beam, measured.wavelength_nm, measured.values, np.full(measured.values.size, sigma), coated)
-
-
-def _thickness(name: str, keys: Layer) -> Parameter:
-    """Return a layer's thickness: expected, bounded, fixed, or free with a hint for the search."""
-    given = keys.thickness_nm
-    free = Start(THICKNESS_START_NM, THICKNESS_LOW_NM, THICKNESS_HIGH_NM)
-    if given is None or isinstance(given, float | int):
-        hint = THICKNESS_START_NM if given is None else float(given)
-        held = keys.material is not None and given is not None
-        return Parameter(name, hint, 0.0 if held else free.low, free.high, vary=not held)
-    return _parameter(name, Start(free.value, 0.0 if given.sigma else free.low, free.high), given)
-
-
-def _parameter(name: str, begins: Start, given: float | Value | None) -> Parameter:
-    """Return a parameter with what the run file says of it over where its law begins.
-
-    Raises:
-        ValueError: what the run file says leaves no room.
-    """
-    if given is None:
-        return Parameter(name, begins.value, begins.low, begins.high, begins.value, begins.sigma)
-    if isinstance(given, float | int):
-        return Parameter(name, float(given), float(given) - 1.0, float(given) + 1.0, vary=False)
-    low = begins.low if given.low is None else given.low
-    high = begins.high if given.high is None else given.high
-    if given.value is not None and given.sigma is None:
-        return Parameter(name, given.value, given.value - 1.0, given.value + 1.0, vary=False)
-    if low >= high:
-        raise ValueError(f"no room between {low:g} and {high:g}")
-    start = given.start if given.start is not None else given.value if given.value is not None else begins.value
-    inside = float(np.clip(start, low + 1e-6 * (high - low), high - 1e-6 * (high - low)))
-    return Parameter(name, inside, low, high, given.value, given.sigma)
-
-
-def _free_starts(dispersion: Dispersion) -> dict[str, Start]:
-    """Return starts for a free choice of laws, from the generic materials where they know the parameter."""
-    known: dict[str, Start] = {}
-    for model in STARTING_MODELS.values():
-        known = {**material(model).parameters, **known}
-    starts = {}
-    for name, parameter in zip(dispersion.names, dispersion.parameters, strict=True):
-        stem, _, last = name.rpartition(".")
-        plain = f"{stem.rstrip('-0123456789')}.{last}"
-        low, high = max(parameter.low, -FREE_LAW_BOUNDS), min(parameter.high, FREE_LAW_BOUNDS)
-        starts[name] = known.get(name) or known.get(plain) or Start(float(np.clip(1.0, low, high)), low, high)
-    return starts
-
-
-def _hint(layer: Layer) -> float | None:
-    """Return the thickness that the user expects of a layer, as a further trial of the search."""
-    given = layer.thickness_nm
-    if isinstance(given, Value):
-        return given.value or given.start
-    return None if given is None else float(given)

@@ -113,9 +113,7 @@ def _unfitted(problem: Problem) -> Solution:
 
 def _rivals(ranked: list[Solution], thickness: int) -> tuple[Rival, ...]:
     """Return all but the best of ranked solutions by thickness and evidence."""
-    return tuple(
-        Rival(float(other.values[thickness]), badness(other) - badness(ranked[0])) for other in ranked[1:]
-    )
+    return tuple(Rival(float(other.values[thickness]), badness(other) - badness(ranked[0])) for other in ranked[1:])
 
 
 @dataclass(frozen=True)

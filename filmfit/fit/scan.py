@@ -41,6 +41,19 @@ class Scan:
         return replace(self, wavelength_nm=self.wavelength_nm[keep], values=self.values[keep], sigma=self.sigma[keep])
 
 
+@dataclass(frozen=True)
+class Reading:
+    """A scan's reading by the model beside what was measured, fractions (W,)."""
+
+    scan: Scan
+    fitted: FloatArray
+
+    @property
+    def rms(self) -> float:
+        """Root mean square of measured minus fitted, fraction."""
+        return float(np.sqrt(np.mean((self.scan.values - self.fitted) ** 2)))
+
+
 def noise_sigma(values: FloatArray) -> float:
     """Return the noise of one point of a smooth curve from its fourth differences.
 

@@ -29,7 +29,9 @@ def kramers_kronig(epsilon2, energy, breaks=()):
     def folded(u):
         return (smooth(energy + u) - smooth(energy - u)) / u
 
-    near = quad(folded, 0.0, energy, points=[abs(b - energy) for b in breaks if 0 < abs(b - energy) < energy], limit=800)[0]
+    near = quad(
+        folded, 0.0, energy, points=[abs(b - energy) for b in breaks if 0 < abs(b - energy) < energy], limit=800
+    )[0]
     far = quad(lambda x: smooth(x) / (x - energy), 2 * energy, 20.0, points=[b for b in breaks if 2 * energy < b < 20.0],
                limit=800)[0]  # fmt: skip
     tail = quad(lambda x: smooth(x) / (x - energy), 20.0, HIGHEST_EV, limit=800)[0]

@@ -18,9 +18,7 @@ def stack(layers, lossless=False):
     return index.reshape(len(layers), WAVELENGTH.size) ** 2, np.array([d for *_, d in layers], float)
 
 
-LAYERS = st.lists(
-    st.tuples(st.floats(0.2, 3.0), st.floats(0.0, 4.0), st.floats(0.0, 400.0)), min_size=0, max_size=4
-)
+LAYERS = st.lists(st.tuples(st.floats(0.2, 3.0), st.floats(0.0, 4.0), st.floats(0.0, 400.0)), min_size=0, max_size=4)
 GLASS = np.full(WAVELENGTH.size, 1.52**2 + 0j)
 
 
@@ -92,7 +90,9 @@ def test_a_batch_is_the_same_as_one_by_one():
     thickness = rng.uniform(5, 300, (2, 6))
     (batch,) = plate("R", WAVELENGTH, epsilon, thickness, GLASS, 1e6, 8.0, "mean", "film", "bare")
     for number in range(6):
-        (one,) = plate("R", WAVELENGTH, epsilon[:, number], thickness[:, number], GLASS, 1e6, 8.0, "mean", "film", "bare")
+        (one,) = plate(
+            "R", WAVELENGTH, epsilon[:, number], thickness[:, number], GLASS, 1e6, 8.0, "mean", "film", "bare"
+        )
         np.testing.assert_allclose(batch.value[number], one.value, atol=1e-14)
         np.testing.assert_allclose(batch.d_epsilon[:, number], one.d_epsilon, atol=1e-13)
         np.testing.assert_allclose(batch.d_thickness[:, number], one.d_thickness, atol=1e-14)

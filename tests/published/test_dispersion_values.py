@@ -32,7 +32,9 @@ def test_photon_energy_constant():
 )
 def test_fused_silica(wavelength_um, index):
     # Malitson, J. Opt. Soc. Am. 55, 1205 (1965)
-    epsilon = law("sellmeier", HC_EV_NM * 1e-3 / wavelength_um, 0.6961663, 0.4079426, 0.8974794, 0.0684043, 0.1162414, 9.896161)
+    epsilon = law(
+        "sellmeier", HC_EV_NM * 1e-3 / wavelength_um, 0.6961663, 0.4079426, 0.8974794, 0.0684043, 0.1162414, 9.896161
+    )
     assert np.sqrt(epsilon[0].real) == pytest.approx(index, abs=1e-7)
 
 

@@ -39,7 +39,9 @@ def test_an_edge_cut_by_the_glass_is_a_lower_bound():
     assert not found.linear
 
 
-@pytest.mark.parametrize(("page", "energy_1e4", "energy_3e4"), [("Konig", 3.630, 3.989), ("Minenkov-glass", 3.584, 4.058)])
+@pytest.mark.parametrize(
+    ("page", "energy_1e4", "energy_3e4"), [("Konig", 3.630, 3.989), ("Minenkov-glass", 3.584, 4.058)]
+)
 def test_energies_at_given_absorption(page, energy_1e4, energy_3e4):
     energy, alpha = absorption("In2O3-SnO2", page)
     assert energy_at_absorption(energy, alpha, 1e4) == pytest.approx(energy_1e4, abs=6e-3)

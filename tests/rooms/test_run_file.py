@@ -76,7 +76,7 @@ def test_where_a_key_stands(loaded):
 
 
 def test_lines_of_nested_and_dotted_tables():
-    found = lines_of('a.b = 1\n[[x]]\ny = [\n 1,\n 2]\n[x.z]\nw = { q = 1 }\n[[x]]\n[[x.s]]\nt = 1\n')
+    found = lines_of("a.b = 1\n[[x]]\ny = [\n 1,\n 2]\n[x.z]\nw = { q = 1 }\n[[x]]\n[[x.s]]\nt = 1\n")
     assert found["a", "b"] == 1
     assert found["x", 0, "y", 1] == 5
     assert found["x", 0, "z", "w", "q"] == 7

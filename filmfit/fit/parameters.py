@@ -1,0 +1,69 @@
+"""Single parameters: what a run file says of one, laid over where its material begins.
+
+Knows fixed, expected, bounded and hinted values; does not know where in the problem a parameter stands.
+"""
+
+import numpy as np
+
+from filmfit.dispersion.compose import Dispersion
+from filmfit.fit.problem import Parameter
+from filmfit.materials import Start, material
+from filmfit.runfile.keys import Layer, Value
+
+STARTING_MODELS = {"tco": "generic-tco", "dielectric": "generic-dielectric", "metal": "generic-metal"}
+FREE_LAW_BOUNDS = 1e3
+THICKNESS_START_NM, THICKNESS_LOW_NM, THICKNESS_HIGH_NM = 100.0, 2.0, 3500.0
+
+
+def thickness_parameter(name: str, keys: Layer) -> Parameter:
+    """Return a layer's thickness: expected, bounded, fixed, or free with a hint for the search."""
+    given = keys.thickness_nm
+    free = Start(THICKNESS_START_NM, THICKNESS_LOW_NM, THICKNESS_HIGH_NM)
+    if given is None or isinstance(given, float | int):
+        hint = THICKNESS_START_NM if given is None else float(given)
+        held = keys.material is not None and given is not None
+        return Parameter(name, hint, 0.0 if held else free.low, free.high, vary=not held)
+    return law_parameter(name, Start(free.value, 0.0 if given.sigma else free.low, free.high), given)
+
+
+def law_parameter(name: str, begins: Start, given: float | Value | None) -> Parameter:
+    """Return a parameter with what the run file says of it over where its law begins.
+
+    Raises:
+        ValueError: what the run file says leaves no room.
+    """
+    if given is None:
+        return Parameter(name, begins.value, begins.low, begins.high, begins.value, begins.sigma)
+    if isinstance(given, float | int):
+        return Parameter(name, float(given), float(given) - 1.0, float(given) + 1.0, vary=False)
+    low = begins.low if given.low is None else given.low
+    high = begins.high if given.high is None else given.high
+    if given.value is not None and given.sigma is None:
+        return Parameter(name, given.value, given.value - 1.0, given.value + 1.0, vary=False)
+    if low >= high:
+        raise ValueError(f"no room between {low:g} and {high:g}")
+    start = given.start if given.start is not None else given.value if given.value is not None else begins.value
+    inside = float(np.clip(start, low + 1e-6 * (high - low), high - 1e-6 * (high - low)))
+    return Parameter(name, inside, low, high, given.value, given.sigma)
+
+
+def free_starts(dispersion: Dispersion) -> dict[str, Start]:
+    """Return starts for a free choice of laws, from the generic materials where they know the parameter."""
+    known: dict[str, Start] = {}
+    for model in STARTING_MODELS.values():
+        known = {**material(model).parameters, **known}
+    starts = {}
+    for name, parameter in zip(dispersion.names, dispersion.parameters, strict=True):
+        stem, _, last = name.rpartition(".")
+        plain = f"{stem.rstrip('-0123456789')}.{last}"
+        low, high = max(parameter.low, -FREE_LAW_BOUNDS), min(parameter.high, FREE_LAW_BOUNDS)
+        starts[name] = known.get(name) or known.get(plain) or Start(float(np.clip(1.0, low, high)), low, high)
+    return starts
+
+
+def hint_nm(layer: Layer) -> float | None:
+    """Return the thickness that the user expects of a layer, as a further trial of the search."""
+    given = layer.thickness_nm
+    if isinstance(given, Value):
+        return given.value or given.start
+    return None if given is None else float(given)
