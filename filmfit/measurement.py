@@ -41,7 +41,14 @@ class Observed:
     d_wedge: FloatArray
 
 
-def observe(optics: Optics, thickness_nm: FloatArray, substrate_mm: float, beam: Beam, errors: Errors) -> Observed:
+def observe(
+    optics: Optics,
+    thickness_nm: FloatArray,
+    substrate_mm: float,
+    beam: Beam,
+    errors: Errors,
+    plate_slopes: bool = True,
+) -> Observed:
     """Return what an instrument with the given errors writes for a coated plate.
 
     Args:
@@ -50,6 +57,7 @@ def observe(optics: Optics, thickness_nm: FloatArray, substrate_mm: float, beam:
         substrate_mm: thickness of the plate in mm.
         beam: quantity and geometry.
         errors: scale, slit and wedge; a batched scale has shape (..., 1).
+        plate_slopes: False leaves the derivative to the plate's dielectric function out (zero).
 
     Returns:
         Value and derivatives, batch axes first, wavelength last.
@@ -67,7 +75,7 @@ def observe(optics: Optics, thickness_nm: FloatArray, substrate_mm: float, beam:
         at = optics.shifted(slit_sign * shift_nm) if slit_sign else optics
         for wedge_sign in wedge_signs:
             stretch = 1.0 + wedge_sign * spread
-            seen = ideal(at, thickness_nm * stretch, substrate_mm, beam)
+            seen = ideal(at, thickness_nm * stretch, substrate_mm, beam, plate_slopes)
             by_wedge = wedge_sign * np.einsum("l...w,l...->...w", seen.d_thickness, thickness_nm)
             nodes.append((seen, stretch, slit_sign, by_wedge))
     k = errors.scale / len(nodes)

@@ -67,7 +67,9 @@ class Ideal:
     d_wavelength: FloatArray
 
 
-def ideal(optics: Optics, thickness_nm: FloatArray, substrate_mm: float, beam: Beam) -> Ideal:
+def ideal(
+    optics: Optics, thickness_nm: FloatArray, substrate_mm: float, beam: Beam, plate_slopes: bool = True
+) -> Ideal:
     """Return R or T of a coated plate as an ideal instrument would measure it.
 
     Args:
@@ -75,6 +77,7 @@ def ideal(optics: Optics, thickness_nm: FloatArray, substrate_mm: float, beam: B
         thickness_nm: layers from the substrate up, (L, ...).
         substrate_mm: thickness of the plate in mm.
         beam: quantity and geometry.
+        plate_slopes: False leaves the derivative to the plate's dielectric function out (zero).
 
     Returns:
         value (..., W), fraction; derivatives to each layer's dielectric function (L, ..., W) and thickness
@@ -95,6 +98,7 @@ def ideal(optics: Optics, thickness_nm: FloatArray, substrate_mm: float, beam: B
         beam.polarization,
         beam.side,
         beam.back,
+        plate_slopes=plate_slopes,
     )
     d_epsilon, d_thickness = got.d_epsilon[::-1], got.d_thickness[::-1]
     # Phases hold thickness / wavelength alone, so a longer wavelength acts as a thinner layer with other constants.

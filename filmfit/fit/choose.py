@@ -129,7 +129,7 @@ def _refined(problem: Problem, thickness: int, hint_nm: float | None) -> list[So
     quick = searchable(problem)
     trials = search(problem, thickness, hint_nm)
     promising = [n for n in range(trials.chi2.size) if trials.chi2[n] < HOPELESS * trials.chi2[0]][:REFINED]
-    found = [solve(quick.started(quick.full(trials.values[:, n]))) for n in promising]
+    found = [solve(quick.started(trials.values[:, n])) for n in promising]
     found.sort(key=lambda solution: solution.chi2)
     distinct: list[Solution] = []
     for solution in found:

@@ -100,6 +100,11 @@ class RunModel:
     layers: tuple[LayerModel, ...]
     plate: PlateModel
     instrument: InstrumentModel
+    plate_held: bool = False  # no derivatives to the plate are asked for
+
+    def coated_only(self) -> "RunModel":
+        """Return the run without the bare plate's scans, its plate held: enough to search for a thickness."""
+        return replace(self, scans=tuple(scan for scan in self.scans if scan.coated), plate_held=True)
 
     def thinned(self, at_most: int) -> "RunModel":
         """Return the run with at most so many points in each scan."""
@@ -138,7 +143,7 @@ class RunModel:
             _common(values[tool.slit_nm]),
             _common(values[tool.wedge]) if scan.coated else 0.0,
         )
-        seen = observe(grid.optics, grid.thickness_nm, self.plate.thickness_mm, scan.beam, errors)
+        seen = observe(grid.optics, grid.thickness_nm, self.plate.thickness_mm, scan.beam, errors, not self.plate_held)
         layers = self.layers if scan.coated else ()
         for number, layer in enumerate(layers):
             jacobian[layer.thickness] += seen.d_thickness[number]
@@ -147,8 +152,9 @@ class RunModel:
                 gradient = grid.gradients[number]
                 slope = seen.d_epsilon[number]
                 jacobian[layer.laws] += gradient.real * slope.real - gradient.imag * slope.imag
-        for index, derivative in grid.plate.items():
-            jacobian[index] += (seen.d_substrate * derivative).real
+        if not self.plate_held:
+            for index, derivative in grid.plate.items():
+                jacobian[index] += (seen.d_substrate * derivative).real
         jacobian[scale] += seen.d_scale
         jacobian[tool.offset_nm] += seen.d_wavelength
         jacobian[tool.slit_nm] += seen.d_slit

@@ -11,6 +11,7 @@ import numpy as np
 from filmfit.fit.problem import Problem
 from filmfit.stack import FloatArray
 
+CHI2_TOLERANCE = 1e-5  # of chi2: a hundredth of a unit for a thousand points
 BOUND_MARGIN = 1e-6  # a start this near its bound, as a share of the span, is moved inside
 
 
@@ -97,6 +98,7 @@ def solve(problem: Problem, max_evaluations: int = 200) -> Solution:
         x_scale="jac",
         scale_covar=False,
         max_nfev=max_evaluations,
+        ftol=CHI2_TOLERANCE,
     )
     end = point(found.params)
     cache.at(end)

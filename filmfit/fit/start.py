@@ -5,6 +5,7 @@ which of them is right. No starting value is needed; a hint only adds a trial.
 """
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 
@@ -46,12 +47,12 @@ def search(problem: Problem, thickness: int, hint_nm: float | None = None) -> Tr
     """Return the distinct minima of one run's problem, best first.
 
     Args:
-        problem: one run; offset, slit and wedge are held during the search.
+        problem: one run.
         thickness: index of the parameter that is searched.
         hint_nm: a further trial, if the user gave one.
 
     Returns:
-        Trials over the free parameters of `searchable(problem)`.
+        Trials over all parameters of the problem, (P, B).
 
     Reference: Levenberg-Marquardt from every start, survivors compared; tests/recovery/.
     """
@@ -61,13 +62,18 @@ def search(problem: Problem, thickness: int, hint_nm: float | None = None) -> Tr
     trials = descend(coarse, starts, COARSE_STEPS)
     trials = trials.best(_distinct(trials, row, MIDDLE_TRIALS, each=3))
     trials = descend(coarse, trials.values, MIDDLE_STEPS)
-    return trials.best(_distinct(trials, row, KEEP, each=1))
+    trials = trials.best(_distinct(trials, row, KEEP, each=1))
+    return Trials(coarse.full(trials.values), trials.chi2)
 
 
 def searchable(problem: Problem) -> Problem:
-    """Return the problem with the fine errors of the instrument held: they do not move a minimum."""
-    held = {p.name: {"vary": False} for p in problem.parameters if p.name.endswith(FINE_ERRORS)}
-    return problem.changed(held)
+    """Return the problem with what does not move a minimum left out: plate, fine errors, the bare plate's scans."""
+    held = {
+        p.name: {"vary": False}
+        for p in problem.parameters
+        if p.name.endswith(FINE_ERRORS) or p.name.startswith("plate.")
+    }
+    return replace(problem.changed(held), runs=tuple(run.coated_only() for run in problem.runs))
 
 
 FINE_ERRORS = (".offset_nm", ".slit_nm", ".wedge")
