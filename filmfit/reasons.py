@@ -57,6 +57,26 @@ TABLE: dict[str, Entry] = {
         "check reference, zero line and sample position; state the instrument's real uncertainty if it is larger",
         "check",
     ),
+    "side-may-be-swapped": Entry(
+        "the data fit better (delta BIC {delta_bic:.0f}) if R was measured from the other side of the sample",
+        "check which side faced the light while R was measured",
+        "check",
+    ),
+    "back-may-be-blackened": Entry(
+        "the data fit better (delta BIC {delta_bic:.0f}) if the rear face was not treated as stated while R was measured",
+        "check whether the rear face was blackened, roughened or bare",
+        "check",
+    ),
+    "reference-may-be-a-plate": Entry(
+        "the data fit better (delta BIC {delta_bic:.0f}) if T was measured against a bare plate",
+        "check the 100 % line: the reference beam must be empty",
+        "check",
+    ),
+    "reflectance-may-be-squared": Entry(
+        "the data fit better (delta BIC {delta_bic:.0f}) if R met the sample twice",
+        "check the reflectance accessory: some give R squared",
+        "check",
+    ),
     "sum-above-one": Entry(
         "R + T exceeds 1 by {excess:.3f} at {wavelength_nm:.0f} nm, more than the stated scale errors allow",
         "check the 100 % line and the R standard",

@@ -3,8 +3,11 @@
 Knows the limits beyond which a person must look; the words stand in reasons.py, the numbers in the fit.
 """
 
+from collections.abc import Sequence
+
 import numpy as np
 
+from filmfit.fit.blunders import Suspicion
 from filmfit.fit.build import Built
 from filmfit.fit.choose import Outcome
 from filmfit.fit.problem import Parameter
@@ -29,7 +32,13 @@ LARGEST_TMM_DIFFERENCE = 1e-6
 
 
 def judge(
-    file: RunFile, built: Built, outcome: Outcome, fits: list[Reading], results: Results, difference: float | None
+    file: RunFile,
+    built: Built,
+    outcome: Outcome,
+    blunders: Sequence[Suspicion],
+    fits: list[Reading],
+    results: Results,
+    difference: float | None,
 ) -> tuple[list[Reason], Answer]:
     """Return all reasons, the gravest first, and the best answer that they leave.
 
@@ -37,6 +46,7 @@ def judge(
         file: the run file.
         built: what was fitted.
         outcome: the chosen fit and its rivals.
+        blunders: readings of the data that would fit better.
         fits: each scan beside its fit.
         results: quantities of the main layer.
         difference: largest difference to the independent code, None where not compared.
@@ -44,6 +54,7 @@ def judge(
     scans = [fit.scan for fit in fits]
     source = built.starting[0]
     reasons = fit_reasons(outcome, fits)
+    reasons += [reason(one.code, delta_bic=one.delta_bic) for one in blunders]
     reasons += parameter_reasons(outcome.solution)
     reasons += scan_reasons(scans, float(np.hypot(*_scale_sigmas(file))))
     expectation = source.index_550 if source is not None and built.problem.index_expectations else None

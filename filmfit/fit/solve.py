@@ -97,6 +97,7 @@ def solve(problem: Problem, max_evaluations: int = 200) -> Solution:
         Dfun=lambda given: cache.at(point(given)).jacobian.T.copy(),
         x_scale="jac",
         scale_covar=False,
+        calc_covar=False,  # ours keeps undetermined directions wide
         max_nfev=max_evaluations,
         ftol=CHI2_TOLERANCE,
     )

@@ -13,6 +13,7 @@ from threadpoolctl import threadpool_limits
 from filmfit.answers.about import assumptions, curve, limits, nuisances, provenance, summary
 from filmfit.answers.film import all_layers, effective_mass, main_results
 from filmfit.errors import Faults, FilmfitError
+from filmfit.fit.blunders import suspicions
 from filmfit.fit.build import Built, RunInput, build_problem
 from filmfit.fit.choose import Outcome, choose
 from filmfit.fit.crosscheck import tmm_difference
@@ -111,7 +112,8 @@ def _answer(
     main = built.main[0][1]
     results = main_results(file, built, posterior, main, mass)
     difference = tmm_difference(run, solution.values)
-    reasons, answer = judge(file, built, outcome, fits, results, difference)
+    blunders = suspicions(built.problem, solution, built.main[0])
+    reasons, answer = judge(file, built, outcome, blunders, fits, results, difference)
     alternatives = [Alternative(thickness_nm=r.thickness_nm, delta_bic=r.delta_bic) for r in outcome.rivals]
     if answer == "unusable":
         found = float(solution.values[outcome.thickness])

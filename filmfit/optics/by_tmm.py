@@ -3,6 +3,8 @@
 Knows how to ask tmm; does not compute anything itself.
 """
 
+from contextlib import redirect_stdout
+from io import StringIO
 from typing import Literal
 
 import numpy as np
@@ -46,8 +48,9 @@ def plate_by_tmm(
         indices = [1.0, *index[:, number], slab[number], 1.0]
         order = slice(None) if side == "film" else slice(None, None, -1)
         for one in polarizations:
-            got = tmm.inc_tmm(
-                one, indices[order], thicknesses[order], coherence[order], np.radians(angle_deg), float(wavelength)
-            )
+            with redirect_stdout(StringIO()):  # tmm prints its remark on opaque layers there
+                got = tmm.inc_tmm(
+                    one, indices[order], thicknesses[order], coherence[order], np.radians(angle_deg), float(wavelength)
+                )
             found[:, number] += np.array([got["R"], got["T"]]) / len(polarizations)
     return found[0], found[1]
