@@ -53,7 +53,7 @@ TABLE: dict[str, Entry] = {
         "usable",
     ),
     "nuisance-far-off": Entry(
-        "{nuisance} came out {sigmas:.1f} sigma from what the instrument is trusted to",
+        "beyond what the instrument is trusted to: {nuisances}",
         "check reference, zero line and sample position; state the instrument's real uncertainty if it is larger",
         "check",
     ),
@@ -63,7 +63,7 @@ TABLE: dict[str, Entry] = {
         "check",
     ),
     "back-may-be-blackened": Entry(
-        "the data fit better (delta BIC {delta_bic:.0f}) if the rear face was not treated as stated while R was measured",
+        "the data fit better (delta BIC {delta_bic:.0f}) if the rear face was not as stated while R was measured",
         "check whether the rear face was blackened, roughened or bare",
         "check",
     ),

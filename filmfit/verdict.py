@@ -140,25 +140,22 @@ def fit_reasons(outcome: Outcome, fits: list[Reading]) -> list[Reason]:
 
 def parameter_reasons(solution: Solution) -> list[Reason]:
     """Return what single parameters say: nuisances far from what is trusted, laws on a bound."""
-    reasons = []
+    instrument, plate, reasons = [], [], []
     for index in solution.problem.free:
         p, value = solution.problem.parameters[index], float(solution.values[index])
         scope, name = p.name.partition(".")[0], p.name.rpartition(".")[2]
-        if ".correction." in p.name:
-            continue
         if name in WATCHED and p.sigma is not None:
             expected = p.expected if p.expected is not None else p.start
             sigmas = abs(value - expected) / p.sigma
             if sigmas > NUISANCE_SIGMAS:
-                if scope == "plate":
-                    reasons.append(
-                        reason("substrate-mismatch", material="what was declared", what=f"{name} is {value:.3g}")
-                    )
-                else:
-                    reasons.append(reason("nuisance-far-off", nuisance=name, sigmas=sigmas))
-        elif scope in ("layer", "material") and _on_bound(p, value):
+                (instrument if scope == "instrument" else plate).append(f"{name} = {value:.4g} ({sigmas:.1f} sigma)")
+        elif scope in ("layer", "material") and ".correction." not in p.name and _on_bound(p, value):
             bound = p.low if value - p.low < p.high - value else p.high
             reasons.append(reason("at-a-bound", parameter=p.name.partition("/")[2] or p.name, bound=bound))
+    if instrument:
+        reasons.append(reason("nuisance-far-off", nuisances=", ".join(instrument)))
+    if plate:
+        reasons.append(reason("substrate-mismatch", material="what was declared", what=", ".join(plate)))
     return reasons
 
 
