@@ -5,9 +5,9 @@ Knows how to read and check a material; does not know films or fits. A file with
 A file holds `name`, `kind` (fixed: known constants; starting: where a fit of such a film begins), `description`,
 `valid_nm`, `reference`, `origin` (measured, handbook, memory); then `laws` with `[parameters]` by full name
 ({ value, low, high, sigma }; sigma where the value is expected), or `[[table]]` blocks (reference, wavelength_nm, n,
-k), the first of which is the material and the others further published tables of it. Films may add `[index_550]` and
-`[effective_mass]` (value, sigma, reference) and `continuous_above_nm`; a metal that is both gives its law under
-`[starting]`.
+k), the first of which is the material, over all of `valid_nm`, and the others further published tables of it. Films may
+add `[index_550]` and `[effective_mass]` (value, sigma, reference) and `continuous_above_nm`; a metal that is both fixed
+and a start gives its law under `[starting]`.
 """
 
 import tomllib
@@ -22,6 +22,7 @@ from scipy.interpolate import PchipInterpolator
 from filmfit.dispersion.compose import Dispersion
 from filmfit.dispersion.law import ComplexArray, FloatArray
 from filmfit.errors import MaterialError, nearest
+from filmfit.toml_values import TomlValues
 from filmfit.units import HC_EV_NM
 
 KINDS = ("fixed", "starting")
@@ -67,8 +68,14 @@ class OpticalTable:
     def index(self, wavelength_nm: FloatArray) -> ComplexArray:
         """Return n + ik (W,), shape-preserving cubic between the points: no overshoot, k stays >= 0.
 
+        Raises:
+            ValueError: a wavelength beyond the ends of the table.
+
         Reference: Fritsch and Carlson, SIAM J. Numer. Anal. 17, 238 (1980).
         """
+        low, high = self.wavelength_nm[0], self.wavelength_nm[-1]
+        if not np.all((wavelength_nm >= low) & (wavelength_nm <= high)):
+            raise ValueError(f"the table holds {low:.7g}-{high:.7g} nm only ({self.reference})")
         n, k = self._curves
         found: ComplexArray = n(wavelength_nm) + 1j * np.maximum(k(wavelength_nm), 0.0)
         return found
@@ -150,7 +157,8 @@ def material(name: str, base: Path | None = None, where: str = "material") -> Ma
             raise MaterialError(where, f"no file '{name}'", do="give a path relative to the run file")
         return load(path)
     if name not in library():
-        hint = nearest(name, library())
+        folded = {one.casefold(): one for one in library()}
+        hint = nearest(folded.get(name.casefold(), name), library())
         raise MaterialError(where, f"unknown material '{name}'", do=hint or "see 'filmfit materials list'")
     return load(_folder() / f"{name}.toml")
 
@@ -163,99 +171,80 @@ def load(path: Path) -> Material:
     """
     try:
         content = tomllib.loads(path.read_text(encoding="utf-8"))
-    except (tomllib.TOMLDecodeError, UnicodeDecodeError, OSError) as error:
+    except (ValueError, RecursionError, OSError) as error:
         raise MaterialError(str(path), f"not a readable TOML file ({error})") from error
     return _Reader(path.name).material(content)
 
 
-class _Reader:
-    """Checks and converts one material file; every fault names the file and the key."""
-
-    def __init__(self, file: str) -> None:
-        self.file = file
-
-    def fault(self, key: str, found: str, allowed: str = "") -> MaterialError:
-        return MaterialError(f"{self.file}: {key}", found, allowed)
+class _Reader(TomlValues):
+    """Makes a material of the content of one file."""
 
     def material(self, content: dict[str, Any]) -> Material:
-        for key in content:
-            if key not in KEYS:
-                raise self.fault(key, "unknown key", ", ".join(KEYS))
-        kind = self.word(content, "kind", KINDS)
-        law_block = content.get("starting", content)
-        laws = tuple(law_block.get("laws", ()))
-        tables = tuple(self.table(number, block) for number, block in enumerate(content.get("table", ())))
-        if not laws and not tables:
-            raise self.fault("laws", "neither laws nor a table")
-        parameters = {name: self.start(name, block) for name, block in law_block.get("parameters", {}).items()}
-        expected = set(Dispersion(laws, self.file).names)
-        if expected != set(parameters):
-            odd = ", ".join(sorted(expected ^ set(parameters)))
-            raise self.fault("parameters", f"missing or not of these laws: {odd}")
-        low, high = self.pair(content, "valid_nm")
+        self.known("", content, KEYS)
+        kind = self.word("kind", content.get("kind"), KINDS)
+        blocks = content.get("table", [])
+        if not isinstance(blocks, list):
+            raise self.fault("table", "not a list", "[[table]] blocks")
+        tables = tuple(self.table(f"table[{number}]", block) for number, block in enumerate(blocks))
+        laws, parameters = self.law(content, kind, bool(tables))
         continuous = content.get("continuous_above_nm")
         return Material(
-            name=self.text(content, "name"),
+            name=self.text("name", content.get("name")),
             kind=kind,
-            description=self.text(content, "description"),
-            valid_nm=(low, high),
-            reference=self.text(content, "reference"),
-            origin=self.word(content, "origin", ORIGINS),
+            description=self.text("description", content.get("description")),
+            valid_nm=self.valid(content, tables),
+            reference=self.text("reference", content.get("reference")),
+            origin=self.word("origin", content.get("origin"), ORIGINS),
             laws=laws,
             parameters=parameters,
             tables=tables,
             index_550=self.expectation(content, "index_550"),
             effective_mass=self.expectation(content, "effective_mass"),
-            continuous_above_nm=None if continuous is None else self.number("continuous_above_nm", continuous),
+            continuous_above_nm=None if continuous is None else self.positive("continuous_above_nm", continuous),
         )
 
-    def text(self, content: dict[str, Any], key: str) -> str:
-        value = content.get(key)
-        if not isinstance(value, str) or not value.strip():
-            raise self.fault(key, "missing or empty", "a text")
-        return value
+    def law(self, content: dict[str, Any], kind: str, tabled: bool) -> tuple[tuple[str, ...], dict[str, Start]]:
+        """Return the laws and where their parameters begin: of a fixed table under [starting], else from the top."""
+        apart = tabled and kind == "fixed"
+        for key in ("laws", "parameters") if apart else ("starting",):
+            if key in content:
+                raise self.fault(key, "out of place", "[starting] with the laws of a fixed table, else laws at the top")
+        block = self.block("starting", content.get("starting", {})) if apart else content
+        self.known("starting.", block if apart else (), ("laws", "parameters"))
+        laws = block.get("laws", [])
+        if not isinstance(laws, list) or not all(isinstance(one, str) for one in laws):
+            raise self.fault("laws", f"{laws!r}", "a list of names")
+        if not laws and not apart:
+            raise self.fault("laws", "neither laws nor a table" if kind == "fixed" else "missing", "a list of names")
+        given = self.block("parameters", block.get("parameters", {}))
+        sums = Dispersion(laws, self.file)
+        if set(sums.names) != set(given):
+            odd = ", ".join(sorted(set(sums.names) ^ set(given)))
+            raise self.fault("parameters", f"missing or not of these laws: {odd}")
+        hard = {name: (one.low, one.high) for name, one in zip(sums.names, sums.parameters, strict=True)}
+        begins = apart or kind == "starting"
+        return tuple(laws), {name: self.start(name, given[name], hard[name], begins) for name in given}
 
-    def word(self, content: dict[str, Any], key: str, words: tuple[str, ...]) -> str:
-        value = self.text(content, key)
-        if value not in words:
-            raise self.fault(key, f"'{value}'", ", ".join(words))
-        return value
-
-    def number(self, key: str, value: object) -> float:
-        if isinstance(value, bool) or not isinstance(value, int | float) or not np.isfinite(value):
-            raise self.fault(key, f"{value!r}", "a finite number")
-        return float(value)
-
-    def pair(self, content: dict[str, Any], key: str) -> tuple[float, float]:
-        value = content.get(key)
-        if not isinstance(value, list) or len(value) != 2:
-            raise self.fault(key, "missing or not a pair", "[shortest, longest]")
-        low, high = self.number(key, value[0]), self.number(key, value[1])
-        if not 0 < low < high:
-            raise self.fault(key, f"{low:g}, {high:g}", "two ascending positive numbers")
-        return low, high
-
-    def start(self, name: str, block: dict[str, Any]) -> Start:
+    def start(self, name: str, given: object, hard: tuple[float, float], begins: bool) -> Start:
+        """Return where a parameter begins, inside the hard bounds of its law."""
+        block = self.block(name, given)
+        self.known(f"{name}.", block, ("value", "low", "high", "sigma"))
         value = self.number(name, block.get("value"))
         low = self.number(name, block.get("low", value))
         high = self.number(name, block.get("high", value))
         if not low <= value <= high:
             raise self.fault(name, f"{value:g} outside {low:g}..{high:g}")
-        sigma = block.get("sigma")
-        return Start(value, low, high, None if sigma is None else self.number(name, sigma))
+        if low < hard[0] or high > hard[1]:
+            raise self.fault(name, f"{low:g}..{high:g}", f"inside {hard[0]:g}..{hard[1]:g}, the bounds of the law")
+        if begins and low == high:
+            raise self.fault(name, f"no room between {low:g} and {high:g}", "low < high where a fit begins")
+        return Start(value, low, high, self.positive(f"{name}.sigma", block["sigma"]) if "sigma" in block else None)
 
-    def expectation(self, content: dict[str, Any], key: str) -> Expectation | None:
-        block = content.get(key)
-        if block is None:
-            return None
-        return Expectation(
-            self.number(key, block.get("value")), self.number(key, block.get("sigma")), self.text(block, "reference")
-        )
-
-    def table(self, number: int, block: dict[str, Any]) -> OpticalTable:
-        key = f"table[{number}]"
-        columns = []
-        for name in ("wavelength_nm", "n", "k"):
+    def table(self, key: str, given: object) -> OpticalTable:
+        block = self.block(key, given)
+        names, columns = ("wavelength_nm", "n", "k"), []
+        self.known(f"{key}.", block, ("reference", *names))
+        for name in names:
             values = block.get(name)
             if not isinstance(values, list) or len(values) < 2:
                 raise self.fault(f"{key}.{name}", "missing or too short", "a list of numbers")
@@ -265,6 +254,29 @@ class _Reader:
             raise self.fault(key, "columns of different length")
         if np.any(np.diff(wavelength) <= 0):
             raise self.fault(f"{key}.wavelength_nm", "not ascending")
-        if np.any(k < 0):
-            raise self.fault(f"{key}.k", "negative", "k >= 0")
-        return OpticalTable(wavelength, n, k, self.text(block, "reference"))
+        for name, column in zip(names, columns, strict=True):
+            if np.any(column < 0):
+                raise self.fault(f"{key}.{name}", "negative", f"{name} >= 0")
+        return OpticalTable(wavelength, n, k, self.text(f"{key}.reference", block.get("reference")))
+
+    def valid(self, content: dict[str, Any], tables: tuple[OpticalTable, ...]) -> tuple[float, float]:
+        """Return the valid range; a table, where there is one, reaches over all of it."""
+        value = content.get("valid_nm")
+        if not isinstance(value, list) or len(value) != 2:
+            raise self.fault("valid_nm", "missing or not a pair", "[shortest, longest]")
+        low, high = self.number("valid_nm", value[0]), self.number("valid_nm", value[1])
+        if not 0 < low < high:
+            raise self.fault("valid_nm", f"{low:g}, {high:g}", "two ascending positive numbers")
+        first, last = tables[0].wavelength_nm[[0, -1]] if tables else (low, high)
+        if low < first or high > last:
+            allowed = f"inside {first:.7g}-{last:.7g}, the range of table[0]"
+            raise self.fault("valid_nm", f"{low:.7g}, {high:.7g}", allowed)
+        return low, high
+
+    def expectation(self, content: dict[str, Any], key: str) -> Expectation | None:
+        if key not in content:
+            return None
+        block = self.block(key, content[key])
+        self.known(f"{key}.", block, ("value", "sigma", "reference"))
+        value, sigma = (self.positive(f"{key}.{name}", block.get(name)) for name in ("value", "sigma"))
+        return Expectation(value, sigma, self.text(f"{key}.reference", block.get("reference")))

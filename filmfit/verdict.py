@@ -140,7 +140,9 @@ def fit_reasons(outcome: Outcome, fits: list[Reading]) -> list[Reason]:
 
 def parameter_reasons(solution: Solution) -> list[Reason]:
     """Return what single parameters say: nuisances far from what is trusted, laws on a bound."""
-    instrument, plate, reasons = [], [], []
+    instrument: list[str] = []
+    plate: list[str] = []
+    reasons: list[Reason] = []
     for index in solution.problem.free:
         p, value = solution.problem.parameters[index], float(solution.values[index])
         scope, name = p.name.partition(".")[0], p.name.rpartition(".")[2]

@@ -56,8 +56,9 @@ def suspicions(problem: Problem, solution: Solution, main: tuple[int, int]) -> t
         if read.chi2 > SCREEN_RATIO * declared.chi2:
             continue
         if declared_badness is None:
-            declared_badness = _badness(declared, main)
-        gained = declared_badness - _badness(read, main)
+            declared_badness, _ = _badness(declared, main)
+        badness_read, dispersion = _badness(read, main)
+        gained = (declared_badness - badness_read) / dispersion
         if gained > DECISIVE_BIC:
             found.append(Suspicion(code, gained))
     return tuple(sorted(found, key=lambda one: -one.delta_bic))
@@ -72,9 +73,15 @@ def _coarse(problem: Problem) -> Problem:
     return problem.changed(changes).thinned(POINTS)
 
 
-def _badness(plain: Solution, main: tuple[int, int]) -> float:
-    """Return the evidence against a reading of the data, the film's law corrected as the ranking allows."""
-    return badness(solve(corrected(plain, *main, RANKING)))
+def _badness(plain: Solution, main: tuple[int, int]) -> tuple[float, float]:
+    """Return the evidence against a reading of the data, the law corrected as the ranking allows, and chi2 per point.
+
+    What even the better reading leaves unexplained counts as noise: evidence is divided by it.
+
+    Reference: quasi-likelihood: Wedderburn, Biometrika 61, 439 (1974).
+    """
+    flexible = solve(corrected(plain, *main, RANKING))
+    return badness(flexible), max(1.0, flexible.chi2 / flexible.problem.points)
 
 
 def _changed(run: RunModel, change: Callable[[Scan], Scan]) -> RunModel | None:

@@ -4,7 +4,7 @@ Knows how to weigh fits against each other; does not turn them into words (verdi
 """
 
 import logging
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -16,6 +16,7 @@ from filmfit.stack import FloatArray
 
 log = logging.getLogger("filmfit.fit")
 
+GROUP_NM = 4.0  # closer points are averaged: a slit is as wide, and no film's fringe is as narrow
 RANKING_POINTS = 250  # a scan's points while rivals are compared
 REFINED = 4  # trials refined with the law alone
 CONTENDERS = 3  # of them, compared with the correction too
@@ -26,7 +27,7 @@ RANKING_BANDS = Freedom(1.0, bands=True)
 FREEDOMS = (Freedom(0.01), Freedom(0.03), Freedom(0.1), Freedom(0.3))
 BAND_FREEDOMS = (Freedom(0.3, bands=True), Freedom(1.0, bands=True), Freedom(3.0, bands=True))
 FALLS_SHORT = 1.5  # chi2 per point
-LAW_FAILS = 100.0  # chi2 per point of the best minimum with the law alone
+LAW_FAILS = 250.0  # chi2 per point of the best minimum with the law alone
 HOPELESS = 30.0  # a trial whose chi2 is this many times the best one's is not refined
 
 
@@ -77,25 +78,42 @@ def choose(problem: Problem, main: tuple[int, int], hint_nm: float | None = None
     """
     run, layer = main
     thickness = problem.runs[run].layers[layer].thickness
+    few = problem.binned(GROUP_NM)
     ranking = problem.thinned(RANKING_POINTS)
-    refined = _refined(ranking, thickness, hint_nm)
-    if refined[0].chi2 > LAW_FAILS * refined[0].problem.points:
+    plains = [solve(ranking.started(one.values)) for one in _refined(ranking, thickness, hint_nm)[:CONTENDERS]]
+    plains = _distinct(plains, thickness)
+    if plains[0].chi2 > LAW_FAILS * plains[0].problem.points:
         log.info("no thickness fits with the law alone: absorption bands are allowed from the start")
-        return _choose_with_bands(problem, main, thickness, hint_nm)
-    ranked = _ranked(ranking, refined, main)
-    plain = solve(problem.started(ranked[0].plain.values))
-    solution, freedom = _with_correction(plain, main)
-    return Outcome(solution, freedom, thickness, _rivals([one.flexible for one in ranked], thickness))
+        outcome = _choose_with_bands(few, main, thickness, _ranked_with_bands(ranking, main, hint_nm))
+    else:
+        ranked = _ranked(plains, main) if len(plains) > 1 else ()
+        plain = solve(few.started(ranked[0].plain.values if ranked else plains[0].values))
+        solution, freedom = _with_correction(plain, main)
+        outcome = Outcome(solution, freedom, thickness, _rivals([one.flexible for one in ranked], thickness))
+    return replace(outcome, solution=_on_all_points(outcome.solution, problem))
 
 
-def _choose_with_bands(problem: Problem, main: tuple[int, int], thickness: int, hint_nm: float | None) -> Outcome:
-    """Return the best-supported thickness where the law alone fails everywhere: the correction joins the search."""
-    anchor = _unfitted(problem)
-    ranking = corrected(_unfitted(problem.thinned(RANKING_POINTS)), *main, RANKING_BANDS)
-    ranked = sorted(
-        (solve(ranking.started(one.values)) for one in _refined(ranking, thickness, hint_nm)[:CONTENDERS]), key=badness
+def _on_all_points(solution: Solution, measured: Problem) -> Solution:
+    """Return a solution found on averaged points with the scans as they were measured."""
+    runs = tuple(
+        replace(run, scans=given.scans) for run, given in zip(solution.problem.runs, measured.runs, strict=True)
     )
-    values = ranked[0].values
+    problem = replace(solution.problem, runs=runs)
+    residual, _ = problem.evaluate(solution.values[list(problem.free)])
+    return replace(solution, problem=problem, chi2=float(residual @ residual))
+
+
+def _ranked_with_bands(problem: Problem, main: tuple[int, int], hint_nm: float | None) -> list[Solution]:
+    """Return the distinct minima by evidence where absorption bands join the search."""
+    thickness = problem.runs[main[0]].layers[main[1]].thickness
+    flexible = corrected(_unfitted(problem), *main, RANKING_BANDS)
+    found = _refined(flexible, thickness, hint_nm)[:CONTENDERS]
+    return sorted((solve(flexible.started(one.values)) for one in found), key=badness)
+
+
+def _choose_with_bands(problem: Problem, main: tuple[int, int], thickness: int, ranked: list[Solution]) -> Outcome:
+    """Return the best-supported bands, begun at the best of the ranked minima."""
+    anchor, values = _unfitted(problem), ranked[0].values
     found = []
     for freedom in BAND_FREEDOMS:
         solution = solve(corrected(anchor, *main, freedom).started(values))
@@ -129,24 +147,23 @@ def _refined(problem: Problem, thickness: int, hint_nm: float | None) -> list[So
     quick = searchable(problem)
     trials = search(problem, thickness, hint_nm)
     promising = [n for n in range(trials.chi2.size) if trials.chi2[n] < HOPELESS * trials.chi2[0]][:REFINED]
-    found = [solve(quick.started(trials.values[:, n])) for n in promising]
-    found.sort(key=lambda solution: solution.chi2)
+    return _distinct([solve(quick.started(trials.values[:, n])) for n in promising], thickness)
+
+
+def _distinct(solutions: list[Solution], thickness: int) -> list[Solution]:
+    """Return solutions of different thickness, best first, without the hopeless."""
     distinct: list[Solution] = []
-    for solution in found:
+    for solution in sorted(solutions, key=lambda one: one.chi2):
         here = solution.values[thickness]
-        if all(abs(other.values[thickness] - here) > max(SAME_NM, SAME_RATIO * here) for other in distinct):
+        apart = all(abs(one.values[thickness] - here) > max(SAME_NM, SAME_RATIO * here) for one in distinct)
+        if apart and (not distinct or solution.chi2 < HOPELESS * distinct[0].chi2):
             distinct.append(solution)
     return distinct
 
 
-def _ranked(problem: Problem, solutions: list[Solution], main: tuple[int, int]) -> list[_Contender]:
-    """Return the contenders by their evidence, each given its own instrument errors and its own correction."""
-    contenders = []
-    for solution in solutions[:CONTENDERS]:
-        plain = solve(problem.started(solution.values))
-        flexible = solve(corrected(plain, *main, RANKING))
-        log.info("contender: badness %.0f alone, %.0f corrected", badness(plain), badness(flexible))
-        contenders.append(_Contender(plain, flexible))
+def _ranked(plains: list[Solution], main: tuple[int, int]) -> list[_Contender]:
+    """Return the contenders by their evidence, each given its own correction."""
+    contenders = [_Contender(plain, solve(corrected(plain, *main, RANKING))) for plain in plains]
     if all(_falls_short(contender.flexible) for contender in contenders):
         contenders = [
             _Contender(one.plain, min(one.flexible, solve(corrected(one.plain, *main, RANKING_BANDS)), key=badness))
@@ -162,15 +179,32 @@ def _falls_short(solution: Solution) -> bool:
 
 def _with_correction(plain: Solution, main: tuple[int, int]) -> tuple[Solution, Freedom]:
     """Return the solution of the best-supported correction, and how free that is."""
-    found: list[tuple[float, Solution, Freedom]] = []
-    for freedoms in (FREEDOMS, BAND_FREEDOMS):
-        start: FloatArray | None = None
-        for freedom in freedoms:
-            problem = corrected(plain, *main, freedom)
-            solution = solve(problem if start is None else problem.started(start))
-            start = solution.values
-            found.append((badness(solution), solution, freedom))
-        if not _falls_short(min(found, key=lambda row: row[0])[1]):
-            break
-    _, solution, freedom = min(found, key=lambda row: row[0])
+    best = _best_of(plain, main, FREEDOMS, FREEDOMS.index(RANKING))
+    if _falls_short(best[1]):
+        best = min(
+            best, _best_of(plain, main, BAND_FREEDOMS, BAND_FREEDOMS.index(RANKING_BANDS)), key=lambda row: row[0]
+        )
+    _, solution, freedom = best
     return solution, freedom
+
+
+def _best_of(
+    plain: Solution, main: tuple[int, int], freedoms: tuple[Freedom, ...], first: int
+) -> tuple[float, Solution, Freedom]:
+    """Return the best-supported of neighbouring freedoms, climbing from the first: evidence has one peak in size."""
+    tried: dict[int, tuple[float, Solution, Freedom]] = {}
+
+    def at(number: int, start: FloatArray | None) -> tuple[float, Solution, Freedom]:
+        if number not in tried:
+            problem = corrected(plain, *main, freedoms[number])
+            solution = solve(problem if start is None else problem.started(start))
+            tried[number] = (badness(solution), solution, freedoms[number])
+        return tried[number]
+
+    here = first
+    best = at(here, None)
+    for step in (-1, 1):
+        while 0 <= here + step < len(freedoms) and at(here + step, best[1].values)[0] < best[0]:
+            here += step
+            best = tried[here]
+    return best

@@ -15,6 +15,8 @@ FIRST_DAMPING = 1e-2
 DAMPING_DOWN = 0.2
 DAMPING_UP = 6.0
 LARGEST_DAMPING = 1e8
+GAVE_UP = 1e4  # a trial damped this much has no way down
+SETTLED = 1e-6  # of chi2, gained by the last step
 
 
 @dataclass(frozen=True)
@@ -35,7 +37,7 @@ def descend(problem: Problem, starts: FloatArray, steps: int) -> Trials:
     Args:
         problem: residuals and derivatives.
         starts: free parameters, (F, B).
-        steps: number of steps; each costs one evaluation of the batch.
+        steps: number of steps at most; each costs one evaluation of the batch.
 
     Returns:
         The best point each trial has seen.
@@ -52,11 +54,14 @@ def descend(problem: Problem, starts: FloatArray, steps: int) -> Trials:
         new_residual, new_jacobian = problem.evaluate(trial)
         new_chi2 = np.sum(new_residual**2, axis=-1)
         better = new_chi2 < chi2
+        settled = np.all(np.where(better, chi2 - new_chi2 < SETTLED * chi2, damping > GAVE_UP))
         values = np.where(better, trial, values)
         chi2 = np.where(better, new_chi2, chi2)
         residual = np.where(better[:, None], new_residual, residual)
         jacobian = np.where(better[:, None], new_jacobian, jacobian)
         damping = np.minimum(damping * np.where(better, DAMPING_DOWN, DAMPING_UP), LARGEST_DAMPING)
+        if settled:
+            break
     return Trials(values, chi2)
 
 

@@ -17,6 +17,7 @@ from filmfit.stack import ComplexArray, FloatArray, Optics
 from filmfit.units import HC_EV_NM
 
 IndexArray = NDArray[np.intp]
+SMALL_ANGLE_DEG = 15.0
 
 
 class Dispersive(Protocol):
@@ -103,12 +104,20 @@ class RunModel:
     plate_held: bool = False  # no derivatives to the plate are asked for
 
     def coated_only(self) -> "RunModel":
-        """Return the run without the bare plate's scans, its plate held: enough to search for a thickness."""
-        return replace(self, scans=tuple(scan for scan in self.scans if scan.coated), plate_held=True)
+        """Return the run as a search needs it: no bare plate's scans, the plate held, small angles taken for none.
+
+        At 8 degrees R differs from that at 0 by 0.0005 and the thickness by 0.3 %: no minimum is lost by it.
+        """
+        scans = tuple(scan.straightened(SMALL_ANGLE_DEG) for scan in self.scans if scan.coated)
+        return replace(self, scans=scans, plate_held=True)
 
     def thinned(self, at_most: int) -> "RunModel":
         """Return the run with at most so many points in each scan."""
         return replace(self, scans=tuple(scan.thinned(at_most) for scan in self.scans))
+
+    def binned(self, width_nm: float) -> "RunModel":
+        """Return the run with neighbouring points averaged in groups no wider than `width_nm`."""
+        return replace(self, scans=tuple(scan.binned(width_nm) for scan in self.scans))
 
     def predict(self, values: FloatArray) -> Prediction:
         """Return what the instrument would have written, and how it depends on each parameter.

@@ -109,6 +109,10 @@ class Problem:
         """Return the problem with at most so many points in each scan."""
         return replace(self, runs=tuple(run.thinned(at_most) for run in self.runs))
 
+    def binned(self, width_nm: float) -> "Problem":
+        """Return the problem with neighbouring points averaged in groups no wider than `width_nm`."""
+        return replace(self, runs=tuple(run.binned(width_nm) for run in self.runs))
+
     def predict(self, values: FloatArray) -> tuple[Prediction, ...]:
         """Return every run's prediction for all parameters (P,) or (P, B)."""
         return tuple(run.predict(values) for run in self.runs)

@@ -36,6 +36,30 @@ class Scan:
         keep = np.unique(np.searchsorted(self.wavelength_nm, wanted).clip(0, self.wavelength_nm.size - 1))
         return self.masked(keep)
 
+    def straightened(self, up_to_deg: float) -> "Scan":
+        """Return the scan as if measured at normal incidence, where its angle is small."""
+        if self.beam.angle_deg > up_to_deg:
+            return self
+        return replace(self, beam=replace(self.beam, angle_deg=0.0))
+
+    def binned(self, width_nm: float) -> "Scan":
+        """Return the scan with neighbouring points averaged in groups of one size, each no wider than `width_nm`.
+
+        Averaging loses no information while a group is narrower than the structure of the curve.
+        """
+        spacing = float(np.median(np.diff(self.wavelength_nm)))
+        size = int(width_nm / spacing + 1e-9)
+        if size <= 1:
+            return self
+        starts = np.arange(0, self.wavelength_nm.size, size)
+        counts = np.diff(np.append(starts, self.wavelength_nm.size))
+        return replace(
+            self,
+            wavelength_nm=np.add.reduceat(self.wavelength_nm, starts) / counts,
+            values=np.add.reduceat(self.values, starts) / counts,
+            sigma=np.sqrt(np.add.reduceat(self.sigma**2, starts)) / counts,
+        )
+
     def masked(self, keep: np.ndarray) -> "Scan":
         """Return the scan with only the points that an index or boolean array keeps."""
         return replace(self, wavelength_nm=self.wavelength_nm[keep], values=self.values[keep], sigma=self.sigma[keep])

@@ -27,9 +27,9 @@ INDEX_SEEDS: tuple[dict[str, float], ...] = (
 )
 
 COARSE_POINTS = 60
-COARSE_STEPS = 8
-MIDDLE_TRIALS = 48
-MIDDLE_STEPS = 12
+# Steps downhill for all trials, then how many go on, how many of them of one thickness, and their further steps.
+FIRST_STEPS = 4
+STAGES = ((120, 4, 5), (40, 3, 10))
 KEEP = 10
 SAME_NM = 4.0  # two ends this near, and within SAME_RATIO, are one minimum
 SAME_RATIO = 0.02
@@ -59,9 +59,10 @@ def search(problem: Problem, thickness: int, hint_nm: float | None = None) -> Tr
     coarse = searchable(problem).thinned(COARSE_POINTS)
     starts = _starts(coarse, thickness, hint_nm)
     row = coarse.free.index(thickness)
-    trials = descend(coarse, starts, COARSE_STEPS)
-    trials = trials.best(_distinct(trials, row, MIDDLE_TRIALS, each=3))
-    trials = descend(coarse, trials.values, MIDDLE_STEPS)
+    trials = descend(coarse, starts, FIRST_STEPS)
+    for keep, each, steps in STAGES:
+        trials = trials.best(_distinct(trials, row, keep, each))
+        trials = descend(coarse, trials.values, steps)
     trials = trials.best(_distinct(trials, row, KEEP, each=1))
     return Trials(coarse.full(trials.values), trials.chi2)
 
