@@ -15,6 +15,7 @@ FIRST_DAMPING = 1e-2
 DAMPING_DOWN = 0.2
 DAMPING_UP = 6.0
 LARGEST_DAMPING = 1e8
+UNDAMPED = 1e-4  # below it a step is a Gauss-Newton step, whose gain tells how far the minimum is
 GAVE_UP = 1e4  # a trial damped this much has no way down
 SETTLED = 1e-6  # of chi2, gained by the last step
 
@@ -54,7 +55,8 @@ def descend(problem: Problem, starts: FloatArray, steps: int) -> Trials:
         new_residual, new_jacobian = problem.evaluate(trial)
         new_chi2 = np.sum(new_residual**2, axis=-1)
         better = new_chi2 < chi2
-        settled = np.all(np.where(better, chi2 - new_chi2 < SETTLED * chi2, damping > GAVE_UP))
+        small = (chi2 - new_chi2 < SETTLED * chi2) & (damping < UNDAMPED)
+        settled = np.all(np.where(better, small, damping > GAVE_UP))
         values = np.where(better, trial, values)
         chi2 = np.where(better, new_chi2, chi2)
         residual = np.where(better[:, None], new_residual, residual)

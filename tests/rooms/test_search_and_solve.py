@@ -20,7 +20,7 @@ def test_seeds_are_dense_enough_for_every_fringe():
 def test_descent_ends_where_the_solver_ends(make):
     problem = searchable(make(noise_seed=1))
     start = problem.start_values()[list(problem.free)]
-    ended = descend(problem, np.array([start * 1.02, start * 0.98]).T, 25)
+    ended = descend(problem, np.array([start * 1.02, start * 0.98]).T, 80)
     solution = solve(problem)
     # a tenth of a unit of chi2 is far inside the noise
     assert ended.chi2 == pytest.approx(solution.chi2, abs=0.1)
