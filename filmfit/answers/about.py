@@ -8,8 +8,9 @@ from importlib.metadata import version
 import numpy as np
 
 from filmfit import __version__
-from filmfit.fit.build import Built, RunInput
+from filmfit.fit.build import Built
 from filmfit.fit.choose import Outcome
+from filmfit.fit.inputs import RunInput
 from filmfit.fit.interval import Posterior
 from filmfit.fit.scan import Reading
 from filmfit.materials import Expectation

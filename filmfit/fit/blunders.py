@@ -16,11 +16,13 @@ from filmfit.fit.model import RunModel
 from filmfit.fit.problem import Problem
 from filmfit.fit.scan import Scan
 from filmfit.fit.solve import Solution, solve
-from filmfit.fit.start import FINE_ERRORS
+from filmfit.fit.start import FINE_ERRORS, search
 from filmfit.stack import FloatArray
 
+BLUR = (".slit_nm", ".wedge", ".haze_R", ".haze_T")
 POINTS = 90  # a scan's points
 SCREEN_EVALUATIONS = 25
+LOST = 30.0  # chi2 per point of the declared reading with the law alone: its end tells nothing of another reading's
 SCREEN_RATIO = 3.0  # a reading whose chi2 with the law alone is this many times the declared one is out
 DECISIVE_BIC = 10.0  # Kass and Raftery, J. Am. Stat. Assoc. 90, 773 (1995), p. 777
 
@@ -52,7 +54,7 @@ def suspicions(problem: Problem, solution: Solution, main: tuple[int, int]) -> t
         if changed is None:
             continue
         runs = (*start.runs[: main[0]], changed, *start.runs[main[0] + 1 :])
-        read = solve(replace(start, runs=runs), SCREEN_EVALUATIONS)
+        read = _read(replace(start, runs=runs), main, lost=declared.chi2 > LOST * declared.problem.points)
         if read.chi2 > SCREEN_RATIO * declared.chi2:
             continue
         if declared_badness is None:
@@ -64,12 +66,21 @@ def suspicions(problem: Problem, solution: Solution, main: tuple[int, int]) -> t
     return tuple(sorted(found, key=lambda one: -one.delta_bic))
 
 
+def _read(problem: Problem, main: tuple[int, int], lost: bool) -> Solution:
+    """Return a reading of the data, from where the declared one ended or, where that was lost, from a new search."""
+    near = solve(problem, SCREEN_EVALUATIONS)
+    if not lost:
+        return near
+    found = search(problem, problem.runs[main[0]].layers[main[1]].thickness)
+    return min(near, solve(problem.started(found.values[:, 0]), SCREEN_EVALUATIONS), key=lambda one: one.chi2)
+
+
 def _coarse(problem: Problem) -> Problem:
-    """Return the problem on few points, without slit and wedge: they blur every reading alike."""
+    """Return the problem on few points, without slit, wedge and scatter: they blur every reading alike."""
     changes: dict[str, dict[str, object]] = {}
     for p in problem.parameters:
         if p.name.endswith(FINE_ERRORS):
-            changes[p.name] = {"vary": False} if p.name.endswith(".offset_nm") else {"vary": False, "start": 0.0}
+            changes[p.name] = {"vary": False, "start": 0.0} if p.name.endswith(BLUR) else {"vary": False}
     return problem.changed(changes).thinned(POINTS)
 
 

@@ -12,16 +12,15 @@ import numpy as np
 
 from filmfit.dispersion.compose import Dispersion
 from filmfit.errors import Faults, FilmfitError, MaterialError, RunFileError, nearest
+from filmfit.fit.inputs import RunInput, scan_of
 from filmfit.fit.model import InstrumentModel, LayerModel, PlateModel, RunModel
 from filmfit.fit.parameters import STARTING_MODELS, free_starts, hint_nm, law_parameter, thickness_parameter
 from filmfit.fit.plate import PlateStart, plate_from_scans, plate_of_material
 from filmfit.fit.problem import IndexExpectation, Parameter, Problem
-from filmfit.fit.scan import Scan, noise_sigma
+from filmfit.fit.scan import Scan
 from filmfit.materials import Material, material
-from filmfit.runfile.keys import BareSpectrum, Instrument, Layer, Spectrum
+from filmfit.runfile.keys import Instrument, Layer
 from filmfit.runfile.load import RunFile
-from filmfit.spectra.spectrum import Spectrum as Measured
-from filmfit.stack import Beam
 
 GLASSES = ("soda-lime-glass", "fused-silica", "borosilicate-crown-517642")
 SCALE_LOW, SCALE_HIGH = 0.8, 1.2
@@ -30,17 +29,9 @@ OFFSET_LIMIT_NM = 3.0
 SLIT_NM, SLIT_SIGMA_NM, SLIT_LOW_NM, SLIT_HIGH_NM = 2.0, 1.5, 0.05, 10.0
 SLIT_STATED_SHARE = 0.2
 WEDGE_START, WEDGE_SIGMA, WEDGE_LOW, WEDGE_HIGH = 0.005, 0.01, 1e-4, 0.1
+HAZE_SIGMA, HAZE_HIGH = 0.03, 0.5  # free only where the data ask for it (choose.py)
 PLATE_INDEX_LIMIT, PLATE_SHIFT_LIMIT, PLATE_FACTOR_HIGH = 0.1, 0.1, 10.0
 FEWEST_POINTS = 10
-
-
-@dataclass(frozen=True)
-class RunInput:
-    """A run file with its spectra as read: of the coated plate and of the bare one, in the file's order."""
-
-    file: RunFile
-    coated: tuple[Measured, ...]
-    bare: tuple[Measured, ...]
 
 
 @dataclass(frozen=True)
@@ -150,7 +141,7 @@ class _Builder:
             self.faults.append(
                 MaterialError(where, f"'{name}' is where a fit begins, not a known material", do=f'use like = "{name}"')
             )
-        elif key != "material" and not found.laws:
+        elif key != "material" and not (found.laws and (found.kind == "starting" or found.tables)):
             self.faults.append(
                 MaterialError(where, f"'{name}' has no law to fit", do=f'use material = "{name}" to hold it fixed')
             )
@@ -161,20 +152,25 @@ class _Builder:
         name = file.content.substrate.material
         if name is None:
             return None
+        where = file.where("substrate", "material")
         try:
-            return material(name, file.path.parent, file.where("substrate", "material"))
+            found = material(name, file.path.parent, where)
         except MaterialError as error:
             self.faults.append(error)
             return None
+        if found.kind != "fixed":
+            self.faults.append(MaterialError(where, f"'{name}' is where a fit begins, not a known material",
+                                             do="name a glass: see 'filmfit materials list'"))  # fmt: skip
+        return found
 
     def scans(self, given: RunInput, fixed: Sequence[Material]) -> tuple[Scan, ...]:
         """Return the run's scans inside the range of every material that is held fixed."""
         content = given.file.content
         scans = []
         for keys, measured in zip(content.spectrum, given.coated, strict=True):
-            scans.append(_scan(keys, measured, keys.side, content.substrate.back, True))
+            scans.append(scan_of(keys, measured, keys.side, content.substrate.back, True))
         for bare, measured in zip(content.substrate.spectrum, given.bare, strict=True):
-            scans.append(_scan(bare, measured, "film", "bare", False))
+            scans.append(scan_of(bare, measured, "film", "bare", False))
         kept = []
         bare_t = [scan for scan in scans if not scan.coated and scan.beam.quantity == "T"]
         for scan in scans:
@@ -271,6 +267,10 @@ class _Builder:
         stem = f"instrument.{keys.id}"
         slit = keys.slit_nm if keys.slit_nm is not None else SLIT_NM
         slit_sigma = SLIT_SIGMA_NM if keys.slit_nm is None else max(SLIT_STATED_SHARE * slit, 0.1)
+        haze = [
+            self.parameter(Parameter(f"run.{run_id}.haze_{one}", 0.0, 0.0, HAZE_HIGH, 0.0, HAZE_SIGMA, vary=False))
+            for one in ("R", "T")
+        ]
         return InstrumentModel(
             self.parameter(Parameter(f"{stem}.scale_R", 1.0, SCALE_LOW, SCALE_HIGH, 1.0, keys.scale_sigma_R)),
             self.parameter(Parameter(f"{stem}.scale_T", 1.0, SCALE_LOW, SCALE_HIGH, 1.0, keys.scale_sigma_T)),
@@ -281,11 +281,5 @@ class _Builder:
                 Parameter(f"{stem}.slit_nm", max(slit, SLIT_LOW_NM), SLIT_LOW_NM, SLIT_HIGH_NM, slit, slit_sigma)
             ),
             self.parameter(Parameter(f"run.{run_id}.wedge", WEDGE_START, WEDGE_LOW, WEDGE_HIGH, 0.0, WEDGE_SIGMA)),
+            *haze,
         )
-
-
-def _scan(keys: BareSpectrum | Spectrum, measured: Measured, side: str, back: str, coated: bool) -> Scan:
-    """Return a measured spectrum as the fit uses it, its noise as stated or from its own scatter."""
-    sigma = keys.sigma if keys.sigma is not None else noise_sigma(measured.values)
-    beam = Beam(keys.quantity, keys.angle_deg, keys.polarization, side, back)  # type: ignore[arg-type]
-    return Scan(beam, measured.wavelength_nm, measured.values, np.full(measured.values.size, sigma), coated)

@@ -26,6 +26,10 @@ RANKING_BANDS = Freedom(1.0, bands=True)
 # No film obeys a law to better than a percent, so there is always a little.
 FREEDOMS = (Freedom(0.01), Freedom(0.03), Freedom(0.1), Freedom(0.3))
 BAND_FREEDOMS = (Freedom(0.3, bands=True), Freedom(1.0, bands=True), Freedom(3.0, bands=True))
+STRANGE = 0.1  # a law that must be corrected this much may be a rough film instead
+HAZE = (".haze_R", ".haze_T")
+HAZE_START = 0.01
+DECISIVE_BIC = 10.0
 FALLS_SHORT = 1.5  # chi2 per point
 LAW_FAILS = 250.0  # chi2 per point of the best minimum with the law alone
 HOPELESS = 30.0  # a trial whose chi2 is this many times the best one's is not refined
@@ -88,7 +92,7 @@ def choose(problem: Problem, main: tuple[int, int], hint_nm: float | None = None
     else:
         ranked = _ranked(plains, main) if len(plains) > 1 else ()
         plain = solve(few.started(ranked[0].plain.values if ranked else plains[0].values))
-        solution, freedom = _with_correction(plain, main)
+        solution, freedom = _with_scatter(plain, main, *_with_correction(plain, main))
         outcome = Outcome(solution, freedom, thickness, _rivals([one.flexible for one in ranked], thickness))
     return replace(outcome, solution=_on_all_points(outcome.solution, problem))
 
@@ -185,6 +189,22 @@ def _with_correction(plain: Solution, main: tuple[int, int]) -> tuple[Solution, 
             best, _best_of(plain, main, BAND_FREEDOMS, BAND_FREEDOMS.index(RANKING_BANDS)), key=lambda row: row[0]
         )
     _, solution, freedom = best
+    return solution, freedom
+
+
+def _with_scatter(
+    plain: Solution, main: tuple[int, int], solution: Solution, freedom: Freedom
+) -> tuple[Solution, Freedom]:
+    """Return the solution with light lost by scattering where that is decisively better than a strange law."""
+    if freedom.size < STRANGE:
+        return solution, freedom
+    problem = plain.problem
+    free = {p.name: {"vary": True, "start": HAZE_START} for p in problem.parameters if p.name.endswith(HAZE)}
+    hazy = solve(problem.changed(free))
+    gained_badness, gained, its_freedom = _best_of(hazy, main, FREEDOMS, FREEDOMS.index(RANKING))
+    log.info("with scatter: badness %.0f against %.0f", gained_badness, badness(solution))
+    if gained_badness < badness(solution) - DECISIVE_BIC:
+        return gained, its_freedom
     return solution, freedom
 
 

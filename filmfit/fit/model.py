@@ -18,6 +18,7 @@ from filmfit.units import HC_EV_NM
 
 IndexArray = NDArray[np.intp]
 SMALL_ANGLE_DEG = 15.0
+HAZE_AT_NM = 550.0
 
 
 class Dispersive(Protocol):
@@ -75,13 +76,15 @@ class PlateModel:
 
 @dataclass(frozen=True)
 class InstrumentModel:
-    """Indices of the instrument's and the sample's own errors."""
+    """Indices of the instrument's and the sample's own errors; haze is the share scattered at 550 nm."""
 
     scale_R: int
     scale_T: int
     offset_nm: int
     slit_nm: int
     wedge: int
+    haze_R: int
+    haze_T: int
 
 
 @dataclass(frozen=True)
@@ -147,8 +150,11 @@ class RunModel:
         """Fill one scan's block of the Jacobian and return its readings."""
         tool = self.instrument
         scale = tool.scale_R if scan.beam.quantity == "R" else tool.scale_T
+        haze = tool.haze_R if scan.beam.quantity == "R" else tool.haze_T
+        # light scattered by a rough film misses specular optics, as the inverse square of the wavelength
+        spread = (HAZE_AT_NM / grid.optics.wavelength_nm) ** 2 if scan.coated else np.zeros(scan.values.size)
         errors = Errors(
-            values[scale][..., None],
+            values[scale][..., None] * np.exp(-values[haze][..., None] * spread),
             _common(values[tool.slit_nm]),
             _common(values[tool.wedge]) if scan.coated else 0.0,
         )
@@ -164,7 +170,8 @@ class RunModel:
         if not self.plate_held:
             for index, derivative in grid.plate.items():
                 jacobian[index] += (seen.d_substrate * derivative).real
-        jacobian[scale] += seen.d_scale
+        jacobian[scale] += seen.value / values[scale][..., None]
+        jacobian[haze] -= seen.value * spread
         jacobian[tool.offset_nm] += seen.d_wavelength
         jacobian[tool.slit_nm] += seen.d_slit
         jacobian[tool.wedge] += seen.d_wedge

@@ -77,7 +77,7 @@ def searchable(problem: Problem) -> Problem:
     return replace(problem.changed(held), runs=tuple(run.coated_only() for run in problem.runs))
 
 
-FINE_ERRORS = (".offset_nm", ".slit_nm", ".wedge")
+FINE_ERRORS = (".offset_nm", ".slit_nm", ".wedge", ".haze_R", ".haze_T")
 
 
 def _starts(problem: Problem, thickness: int, hint_nm: float | None) -> FloatArray:

@@ -14,9 +14,10 @@ from filmfit.answers.about import assumptions, curve, limits, nuisances, provena
 from filmfit.answers.film import all_layers, effective_mass, main_results
 from filmfit.errors import Faults, FilmfitError
 from filmfit.fit.blunders import suspicions
-from filmfit.fit.build import Built, RunInput, build_problem
+from filmfit.fit.build import Built, build_problem
 from filmfit.fit.choose import Outcome, choose
 from filmfit.fit.crosscheck import tmm_difference
+from filmfit.fit.inputs import RunInput
 from filmfit.fit.interval import Posterior
 from filmfit.fit.scan import Reading
 from filmfit.result import Alternative, Curve, Result, Results

@@ -89,6 +89,17 @@ def test_tables(name, at, book, page, thinned):
 
 
 @pytest.mark.parametrize("name", ["silver", "aluminium", "chromium"])
+def test_a_metals_law_begins_inside_the_spread_of_its_tables(name):
+    metal = material(name)
+    wavelength = np.linspace(450.0, 950.0, 6)
+    values = np.array([metal.parameters[one].value for one in metal.dispersion.names])
+    start = metal.dispersion.evaluate(1239.841984 / wavelength, values)[0]
+    tables = np.array([one.index(wavelength) ** 2 for one in metal.tables])
+    middle, spread = tables.mean(axis=0), np.abs(tables - tables.mean(axis=0)).max(axis=0)
+    assert np.all(np.abs(start - middle) < 2.5 * spread + 0.1 * np.abs(middle))
+
+
+@pytest.mark.parametrize("name", ["silver", "aluminium", "chromium"])
 def test_a_metals_law_begins_where_fits_to_its_tables_end(name):
     # constant, strength and peak trade against each other, so the mean of fits is met within its stated spread only
     metal = material(name)

@@ -142,6 +142,11 @@ SCAN = "nm,T\n" + "\n".join(f"{x},0.8" for x in range(350, 1000, 10))
          "run.toml:15: layer[1].material: 'ITO' is where a fit begins, not a known material; use like = \"ITO\""),
         ('like = "ITO"', 'like = "titania"',
          "run.toml:15: layer[1].like: 'titania' has no law to fit; use material = \"titania\" to hold it fixed"),
+        ('like = "ITO"', 'like = "fused-silica"',
+         "run.toml:15: layer[1].like: 'fused-silica' has no law to fit; use material = \"fused-silica\" to hold it fixed"),
+        ('"soda-lime-glass"', '"ITO"',
+         "run.toml:11: substrate.material: 'ITO' is where a fit begins, not a known material; name a glass: see "
+         "'filmfit materials list'"),
         ('like = "ITO"', 'laws = ["constant", "druude"]',
          "run.toml:15: layer[1].laws: unknown law 'druude'; allowed: cauchy, constant, drude, lorentz, sellmeier, "
          "tauc-lorentz, urbach; did you mean 'drude'?"),

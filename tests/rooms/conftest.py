@@ -50,6 +50,8 @@ def make_problem(depths=(230.0,), share=True, noise_seed=None):
             add(Parameter("instrument.a.offset_nm", 0.1, -3.0, 3.0, 0.0, 0.3)),
             add(Parameter("instrument.a.slit_nm", 2.0, 0.1, 8.0, 2.0, 1.5)),
             add(Parameter(f"run.{run}.wedge", 0.004, 1e-4, 0.1, 0.0, 0.01)),
+            add(Parameter(f"run.{run}.haze_R", 0.01, 0.0, 0.5, 0.0, 0.03)),
+            add(Parameter(f"run.{run}.haze_T", 0.005, 0.0, 0.5, 0.0, 0.03)),
         )
         scans = tuple(
             Scan(beam, WAVELENGTH, np.zeros(WAVELENGTH.size), np.full(WAVELENGTH.size, SIGMA)) for beam in beams
