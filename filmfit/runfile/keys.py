@@ -1,21 +1,24 @@
 """The keys of a run file: their types, units (in the name) and allowed words.
 
 Knows the whole contract of the run file; does not know files, materials or laws. Units are already the inside ones:
-load.py turns time_min, pressure_mTorr, thickness_um and their kin before it asks here.
+spelled.py turns time_min, pressure_mTorr, thickness_um and their kin before. What keys must agree on among each other
+stands in consistency.py.
 """
 
 from datetime import date
 from typing import Annotated, Any, Literal
 
-from pydantic import BaseModel, ConfigDict, Field, model_validator
+from pydantic import BaseModel, ConfigDict, Discriminator, Field, Tag, model_validator
 
-from filmfit.result import Results
-
+RUN_ID = r"^[A-Za-z0-9][A-Za-z0-9._-]*$"
 Positive = Annotated[float, Field(gt=0)]
 NotNegative = Annotated[float, Field(ge=0)]
 Angle = Annotated[float, Field(ge=0, le=85)]
-Name = Annotated[str, Field(min_length=1)]
-RunId = Annotated[str, Field(pattern=r"^[A-Za-z0-9][A-Za-z0-9._-]*$", max_length=100)]
+Name = Annotated[str, Field(min_length=1, pattern=r"\S")]
+RunId = Annotated[str, Field(pattern=RUN_ID, max_length=100)]
+
+# Which arm of a choice of types a value belongs to; no key of a user can be spelled like these.
+TAGS = ("<number>", "<table>", "<text>", "<whole>", "<truth>")
 
 # Values of the contract that this version refuses as "not supported yet", by key.
 LATER_VALUES: dict[str, tuple[str, ...]] = {
@@ -30,6 +33,22 @@ class Keys(BaseModel):
     """Base of all tables: strict types, no unknown key, no NaN, no change afterwards."""
 
     model_config = ConfigDict(strict=True, extra="forbid", frozen=True, allow_inf_nan=False)
+
+
+def _number_or_table(given: object) -> str:
+    """Say which arm of `float | table` a value is checked against."""
+    return "<table>" if isinstance(given, dict | BaseModel) else "<number>"
+
+
+def _text_or_whole(given: object) -> str | None:
+    """Say which arm of `str | int` a value is checked against; None where it is neither."""
+    return {str: "<text>", int: "<whole>"}.get(type(given))
+
+
+def _plain(given: object) -> str | None:
+    """Say which arm of a lab's own value it is checked against; None where it is no plain value."""
+    kinds = {bool: "<truth>", int: "<whole>", float: "<number>", str: "<text>"}
+    return kinds.get(type(given))
 
 
 class Value(Keys):
@@ -49,13 +68,53 @@ class Value(Keys):
             raise ValueError(f"low = {self.low:g} is not below high = {self.high:g}")
         if not self.model_fields_set:
             raise ValueError("an empty table: give value, sigma, low, high or start")
+        beside = sorted(self.model_fields_set - {"value"})
+        if self.value is not None and self.sigma is None and beside:
+            raise ValueError(f"value without sigma is fixed, but {beside[0]} stands beside it")
+        for name, number in (("value", self.value), ("start", self.start)):
+            if number is not None and self.low is not None and number < self.low:
+                raise ValueError(f"{name} = {number:g} is below low = {self.low:g}")
+            if number is not None and self.high is not None and number > self.high:
+                raise ValueError(f"{name} = {number:g} is above high = {self.high:g}")
         return self
+
+
+class Thickness(Value):
+    """A thickness with what is known of it; all of it positive."""
+
+    value: Positive | None = None
+    low: NotNegative | None = None
+    high: Positive | None = None
+    start: Positive | None = None
+
+
+Parameter = Annotated[
+    Annotated[float, Tag("<number>")] | Annotated[Value, Tag("<table>")], Discriminator(_number_or_table)
+]
+Depth = Annotated[
+    Annotated[Positive, Tag("<number>")] | Annotated[Thickness, Tag("<table>")], Discriminator(_number_or_table)
+]
+Column = Annotated[
+    Annotated[Name, Tag("<text>")] | Annotated[int, Tag("<whole>")],
+    Discriminator(_text_or_whole, custom_error_type="column", custom_error_message="a heading in quotes, or a number"),
+]
+Plain = Annotated[
+    Annotated[str, Tag("<text>")]
+    | Annotated[float, Tag("<number>")]
+    | Annotated[int, Tag("<whole>")]
+    | Annotated[bool, Tag("<truth>")],
+    Discriminator(
+        _plain,
+        custom_error_type="plain_type",
+        custom_error_message="a number, a text in quotes, true or false",
+    ),
+]
 
 
 class Process(Keys):
     """What a layer may state for itself, else it is taken from [run]."""
 
-    source: str | None = None
+    source: Name | None = None
     process: str | None = None
     time_s: Positive | None = None
     power_W: Positive | None = None
@@ -68,8 +127,8 @@ class Run(Process):
     id: RunId
     date: date
     film: Name
-    recipe: str | None = None
-    chamber: str | None = None
+    recipe: Name | None = None
+    chamber: Name | None = None
     time_from: Literal["shutter", "plasma"] = "shutter"
     carrier_speed_m_min: Positive | None = None
     passes: Annotated[int, Field(ge=1)] | None = None
@@ -86,9 +145,9 @@ class Run(Process):
 class Sample(Keys):
     """[sample]: which piece of the plate, where, in which state."""
 
-    name: str | None = None
+    name: Name | None = None
     position_mm: Annotated[tuple[float, float], Field(strict=False)] | None = None
-    state: str = "as-deposited"
+    state: Name = "as-deposited"
 
 
 class BareSpectrum(Keys):
@@ -96,7 +155,7 @@ class BareSpectrum(Keys):
 
     file: Name
     quantity: Literal["R", "T"]
-    column: str | int | None = None
+    column: Column | None = None
     angle_deg: Angle = 0.0
     polarization: Literal["mean", "s", "p"] = "mean"
     sigma: Positive | None = None
@@ -110,12 +169,6 @@ class Substrate(Keys):
     back: Literal["bare", "blackened", "index-matched"] = "bare"
     spectrum: Annotated[tuple[BareSpectrum, ...], Field(strict=False)] = ()
 
-    @model_validator(mode="after")
-    def _known(self) -> "Substrate":
-        if self.material is None and not any(one.quantity == "T" for one in self.spectrum):
-            raise ValueError("neither a material nor the bare plate's own T: the plate is not known")
-        return self
-
 
 class Layer(Process):
     """[[layer]]: one layer, from the substrate up."""
@@ -124,19 +177,11 @@ class Layer(Process):
     material: Name | None = None
     like: Name | None = None
     model: Literal["tco", "dielectric", "metal"] | None = None
-    laws: Annotated[tuple[str, ...], Field(strict=False)] | None = None
-    thickness_nm: float | Value | None = None
+    laws: Annotated[tuple[Name, ...], Field(strict=False)] | None = None
+    thickness_nm: Depth | None = None
     deposited: bool = True
     main: bool = False
-    parameters: dict[str, float | Value] = {}
-
-    @model_validator(mode="after")
-    def _one_kind(self) -> "Layer":
-        given = [key for key in ("material", "like", "model", "laws") if getattr(self, key)]
-        if len(given) != 1:
-            found = " and ".join(given) or "none of them"
-            raise ValueError(f"a layer has one of material, like, model, laws; found {found}")
-        return self
+    parameters: dict[str, Parameter] = {}
 
 
 class Spectrum(BareSpectrum):
@@ -168,10 +213,18 @@ class Electrical(Keys):
 
 
 class Limit(Keys):
-    """A plate limit on one result."""
+    """A plate limit on one result, on one side or on both."""
 
     low: float | None = None
     high: float | None = None
+
+    @model_validator(mode="after")
+    def _consistent(self) -> "Limit":
+        if self.low is None and self.high is None:
+            raise ValueError("an empty limit: give low, high or both")
+        if self.low is not None and self.high is not None and self.low >= self.high:
+            raise ValueError(f"low = {self.low:g} is not below high = {self.high:g}")
+        return self
 
 
 class Content(Keys):
@@ -179,7 +232,7 @@ class Content(Keys):
 
     format: Literal[1]
     run: Run
-    other: dict[str, str | float | int | bool] = {}
+    other: dict[str, Plain] = {}
     sample: Sample = Sample()
     substrate: Substrate
     layer: Annotated[tuple[Layer, ...], Field(strict=False, min_length=1)]
@@ -187,21 +240,6 @@ class Content(Keys):
     instrument: Instrument = Instrument()
     electrical: Electrical = Electrical()
     limits: dict[str, Limit] = {}
-
-    @model_validator(mode="after")
-    def _consistent(self) -> "Content":
-        names = [layer.name for layer in self.layer]
-        twice = sorted({name for name in names if names.count(name) > 1})
-        if twice:
-            raise ValueError(f"two layers named '{twice[0]}': every layer has its own name")
-        if sum(layer.main for layer in self.layer) > 1:
-            raise ValueError("more than one layer with main = true")
-        if self.substrate.back != "bare" and any(one.side == "substrate" for one in self.spectrum):
-            raise ValueError(f'side = "substrate" with back = "{self.substrate.back}": no light enters that face')
-        unknown = [key for key in self.limits if key not in Results.model_fields]
-        if unknown:
-            raise ValueError(f"[limits] names no result '{unknown[0]}'; allowed: {', '.join(Results.model_fields)}")
-        return self
 
 
 def as_record(content: Content) -> dict[str, Any]:

@@ -3,6 +3,7 @@
 Knows the keys an engineer needs first; the whole list is in the README.
 """
 
+import re
 from datetime import date
 
 TEXT = """\
@@ -59,7 +60,8 @@ def starter_text(run_id: str, day: date) -> str:
     """Return the starter run file.
 
     Args:
-        run_id: the run's id.
+        run_id: the run's id; what an id cannot hold becomes a '-'.
         day: its date.
     """
-    return TEXT.format(run_id=run_id, date=day.isoformat())
+    safe = re.sub(r"[^A-Za-z0-9._-]+", "-", run_id).lstrip("._-")[:100]
+    return TEXT.format(run_id=safe or "run-1", date=day.isoformat())

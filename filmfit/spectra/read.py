@@ -1,31 +1,28 @@
-"""A spectrum file read: which column, which units, percent or fraction; what was understood is noted.
+"""A spectrum file read, from its bytes to wavelengths and fractions; what was understood is noted.
 
-Knows headings and units; this is where percent becomes a fraction. Does not know the sample.
+Knows the order of the steps and which numbers cannot be R or T; does not know the sample.
 """
 
 import hashlib
-import re
 from pathlib import Path
 from typing import Literal
 
 import numpy as np
+from numpy.typing import NDArray
 
-from filmfit.errors import SpectrumError, nearest
+from filmfit.errors import SpectrumError
 from filmfit.spectra.blocks import SPOKEN, Block, find_block
+from filmfit.spectra.headings import abscissa, ordinate
+from filmfit.spectra.scale import fractions, wavelengths
 from filmfit.spectra.spectrum import Spectrum
 from filmfit.spectra.text import decode, read_bytes
-from filmfit.units import HC_EV_NM, PERCENT
 
-LARGEST_FRACTION = 1.5  # an ordinate without a unit that goes beyond is in percent
+Array = NDArray[np.float64]
+
 LOWEST_ALLOWED, HIGHEST_ALLOWED = -0.05, 1.5
 FEWEST_POINTS = 5
 SUM_LIMIT, SUM_SHARE = 1.05, 0.05
-X_UNITS = {
-    "nm": r"(?<![a-z])nm(?![a-z])|nanomet",
-    "um": r"(?<![a-z])[uµμ]m(?![a-z])|micron|micromet",
-    "cm-1": r"cm\s*\^?[-−]\s*1|1/cm|wavenumber",
-    "eV": r"(?<![a-z])ev(?![a-z])",
-}
+REPEAT_LIMIT = 0.05  # two readings at one wavelength further apart are of two things (common practice, no source)
 
 
 def read_spectrum(
@@ -46,22 +43,24 @@ def read_spectrum(
     where = where or path.name
     content = read_bytes(path, where)
     block = find_block(decode(content, path.name, where), path.name, where)
-    at = _column(block, column, quantity, path.name, where)
-    pairs = [(row[0], row[at]) for row in block.rows]
+    at = ordinate(block.headings, column, quantity, path.name, where)
+    x_at = abscissa(block.headings, at)
+    pairs = [(row[x_at], row[at]) for row in block.rows]
     kept = np.array([pair for pair in pairs if None not in pair], dtype=float).reshape(-1, 2)
     if len(kept) < FEWEST_POINTS:
         raise SpectrumError(where, f"'{path.name}' has {len(kept)} points in column '{block.headings[at]}'",
                             f"at least {FEWEST_POINTS}")  # fmt: skip
-    wavelength, x_note = _wavelength(kept[:, 0], block.headings[0], path.name, where)
-    values, y_note = _fraction(kept[:, 1], block.headings[at])
-    _refuse_impossible(wavelength, values, path.name, where)
-    wavelength, values, repeats = _ascending(wavelength, values)
+    wavelength, x_note = wavelengths(kept[:, 0], block.headings[x_at], path.name, where)
+    values, y_note = fractions(kept[:, 1], block.headings[at], _heights(block, at), path.name, where)
+    _refuse_impossible(values, path.name, where)
+    wavelength, values, repeats = _ascending(wavelength, values, path.name, where)
     notes = [f"{SPOKEN[block.delimiter]}-delimited, decimal '{block.decimal}', from line {block.first_line}", x_note,
              y_note]  # fmt: skip
-    if len(pairs) > len(kept):
-        notes.append(f"{len(pairs) - len(kept)} gaps left out")
+    if len(block.rows) > len(kept):
+        notes.append(f"{len(block.rows) - len(kept)} gaps left out")
     if repeats:
         notes.append(f"{repeats} repeated wavelengths averaged")
+    notes += [f"a further table from line {line} left out" for line in block.others]
     return Spectrum(quantity, wavelength, values, path.name, block.headings[at],
                     hashlib.sha256(content).hexdigest(), tuple(notes))  # fmt: skip
 
@@ -91,81 +90,36 @@ def check_sum(R: Spectrum, T: Spectrum, where: str) -> None:
         )  # fmt: skip
 
 
-def _column(block: Block, column: str | int | None, quantity: str, name: str, where: str) -> int:
-    """Return the position of the wanted ordinate."""
-    there = ", ".join(f"'{heading}'" for heading in block.headings[1:])
-    if isinstance(column, int):
-        if not 2 <= column <= len(block.headings):
-            raise SpectrumError(where, f"no column {column} in '{name}'", f"2 to {len(block.headings)}")
-        return column - 1
-    if column is None:
-        if len(block.headings) == 2:
-            return 1
-        matches = [at for at, heading in enumerate(block.headings) if at and _stem(heading) == quantity]
-        if len(matches) == 1:
-            return matches[0]
-        raise SpectrumError(where, f"'{name}' holds {len(block.headings) - 1} spectra", there, "name one as column")
-    exact = [at for at, heading in enumerate(block.headings) if at and heading == column]
-    if not exact:
-        exact = [at for at, heading in enumerate(block.headings) if at and _stem(heading) == column.strip()]
-    if len(exact) == 1:
-        return exact[0]
-    if exact:
-        raise SpectrumError(where, f"{len(exact)} columns '{column}' in '{name}'", do="give its number instead")
-    raise SpectrumError(where, f"no column '{column}' in '{name}'", there, nearest(column, block.headings[1:]))
+def _heights(block: Block, at: int) -> dict[str, float]:
+    """Return the largest value of each other column, by its heading."""
+    heights = {}
+    for number, heading in enumerate(block.headings):
+        column = [row[number] for row in block.rows]
+        if number not in (0, at):
+            heights[heading] = max((value for value in column if value is not None), default=0.0)
+    return heights
 
 
-def _stem(heading: str) -> str:
-    """Return a heading without its unit: "R" of "R (%)", "T" of "%T"."""
-    return re.sub(r"[(\[].*?[)\]]|%", "", heading).strip()
-
-
-def _wavelength(x: np.ndarray, heading: str, name: str, where: str) -> tuple[np.ndarray, str]:
-    """Return wavelengths in nm from the first column, by its heading's unit or, unstated, by its range."""
-    unit = next((unit for unit, words in X_UNITS.items() if re.search(words, heading.lower())), None)
-    stated = f"'{heading}'" if unit else "its range"
-    if unit is None:
-        low, high = float(x.min()), float(x.max())
-        readings = [
-            one
-            for one, fits in (
-                ("nm", low >= 150 and high <= 60_000 and high / low < 60),
-                ("um", low >= 0.15 and high <= 60 and not low >= 150),
-            )
-            if fits
-        ]
-        if len(readings) != 1:
-            raise SpectrumError(where, f"'{name}' does not say the unit of its first column ({low:g} to {high:g})",
-                                "nm, um, cm-1 or eV in its heading")  # fmt: skip
-        unit = readings[0]
-    if unit in ("cm-1", "eV") and x.min() <= 0:
-        raise SpectrumError(where, f"'{name}' has {x.min():g} {unit}", "positive numbers")
-    scaled = x * {"nm": 1.0, "um": 1e3, "cm-1": 1e-7, "eV": 1.0 / HC_EV_NM}[unit]
-    wavelength = scaled if unit in ("nm", "um") else 1.0 / scaled
-    return wavelength, f"first column in {unit} by {stated}"
-
-
-def _fraction(y: np.ndarray, heading: str) -> tuple[np.ndarray, str]:
-    """Return the ordinate as a fraction: in percent by its heading or, without a unit, by its size."""
-    if "%" in heading or "percent" in heading.lower():
-        return y * PERCENT, f"'{heading}' in percent"
-    if float(y.max()) > LARGEST_FRACTION:
-        return y * PERCENT, f"'{heading}' in percent, by its size"
-    return y, f"'{heading}' as a fraction"
-
-
-def _refuse_impossible(wavelength: np.ndarray, values: np.ndarray, name: str, where: str) -> None:
-    """Refuse numbers that cannot be R or T against wavelength."""
-    if float(wavelength.min()) <= 0:
-        raise SpectrumError(where, f"'{name}' has a wavelength of {wavelength.min():g} nm", "positive wavelengths")
+def _refuse_impossible(values: Array, name: str, where: str) -> None:
+    """Refuse numbers that cannot be R or T."""
     for value in (float(values.min()), float(values.max())):
         if not LOWEST_ALLOWED <= value <= HIGHEST_ALLOWED:
             raise SpectrumError(where, f"'{name}' holds {value:.4g} as a fraction of 1",
                                 f"{LOWEST_ALLOWED:g} to {HIGHEST_ALLOWED:g}", "check column and unit")  # fmt: skip
 
 
-def _ascending(wavelength: np.ndarray, values: np.ndarray) -> tuple[np.ndarray, np.ndarray, int]:
+def _ascending(wavelength: Array, values: Array, name: str, where: str) -> tuple[Array, Array, int]:
     """Return the points by ascending wavelength, repeated ones averaged, and how many were repeated."""
-    unique, inverse, counts = np.unique(wavelength, return_inverse=True, return_counts=True)
-    mean = np.bincount(inverse, weights=values) / counts
-    return unique, mean, int(wavelength.size - unique.size)
+    order = np.argsort(wavelength, kind="stable")
+    unique, starts, counts = np.unique(wavelength[order], return_index=True, return_counts=True)
+    values = values[order]
+    apart = np.maximum.reduceat(values, starts) - np.minimum.reduceat(values, starts)
+    worst = int(np.argmax(apart))
+    if apart[worst] > REPEAT_LIMIT:
+        raise SpectrumError(
+            where, f"'{name}' has {counts[worst]} values at {unique[worst]:g} nm that differ by {apart[worst]:.3g}",
+            f"at most {REPEAT_LIMIT:g}", "export each scan to its own column or file",
+        )  # fmt: skip
+    if unique.size < FEWEST_POINTS:
+        raise SpectrumError(where, f"'{name}' has {unique.size} different wavelengths", f"at least {FEWEST_POINTS}")
+    return unique, np.add.reduceat(values, starts) / counts, int(wavelength.size - unique.size)

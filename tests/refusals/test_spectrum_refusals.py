@@ -1,5 +1,7 @@
 """What a spectrum file is refused for, in whole sentences."""
 
+import os
+
 import pytest
 
 from filmfit.errors import SpectrumError
@@ -41,6 +43,34 @@ REFUSED = [
     (("nm,T\n" + "".join(f"{x},10,{x % 7}\n" for x in range(300, 400, 10))).encode(), None,
      "w: a.csv:2: '300,10,6' under 2 headings is 3 numbers, or 2 with a decimal comma; export it with semicolons or a "
      "decimal point"),
+    (("nm,T\n" + ROWS).encode() + b"\xff\xfe\x00\x00", None,
+     "w: 'a.csv' is not a text file; export the spectrum as delimited text"),
+    (("".join(f"{x},0,{x % 7}\n" for x in range(300, 400, 10))).encode(), 2,
+     "w: a.csv:1: '300,0,6' is 3 numbers, or fewer with a decimal comma; export it with semicolons or a decimal point"),
+    (("nm,T\n" + ROWS + ROWS).encode(), None,
+     "w: a.csv:12: the first column turns round here; allowed: ascending or descending; sort the rows, or export each "
+     "scan to its own file"),
+    (("nm,T\n" + "".join(f"{x},0.5\n" for x in (400, 500, 410, 490, 420, 480, 430, 470, 440, 460))).encode(), None,
+     "w: a.csv:3: the first column turns round here; allowed: ascending or descending; sort the rows, or export each "
+     "scan to its own file"),
+    (("nm,T\n" + ROWS).encode(), "R", "w: no column 'R' in 'a.csv'; allowed: 'T'"),
+    (("nm,R (%)\n" + ROWS).encode(), None, "w: 'a.csv' holds 'R (%)', not T; set the quantity, or name the column"),
+    (("nm,Absorbance\n" + ROWS).encode(), None,
+     "w: 'Absorbance' in 'a.csv' is absorbance: not supported yet; export it as R or T"),
+    (("nm,T,R\n" + "".join(f"{x},0.9,63\n" for x in range(400, 500, 10))).encode(), "T",
+     "w: 'T' in 'a.csv' goes to 0.9 and 'R' to 63: one in percent, one not; state '%' in the headings of columns in "
+     "percent"),
+    (("x,T\n" + "".join(f"{x / 1000},0.5\n" for x in range(400, 500, 10))).encode(), None,
+     "w: 'a.csv' does not say the unit of its first column (0.4 to 0.49); allowed: nm, um, cm-1 or eV in its heading"),
+    (("x,T\n" + "".join(f"{x},0.5\n" for x in range(400, 4001, 100))).encode(), None,
+     "w: 'a.csv' does not say the unit of its first column (400 to 4000); allowed: nm, um, cm-1 or eV in its heading"),
+    (("Wavelength (um),T\n" + ROWS).encode(), None,
+     "w: 'a.csv' has wavelengths of 400000 to 490000 nm, read in um by 'Wavelength (um)'; allowed: 100 to 100000 nm; check "
+     "the unit of its first column"),
+    (("nm,T\n" + "".join(f"{x},{y}\n" for x in range(400, 450, 10) for y in (0.5, 0.6))).encode(), None,
+     "w: 'a.csv' has 2 values at 400 nm that differ by 0.1; allowed: at most 0.05; export each scan to its own column or "
+     "file"),
+    (b"nm,T\n" + 6 * b"400,0.5\n", None, "w: 'a.csv' has 1 different wavelengths; allowed: at least 5"),
 ]  # fmt: skip
 
 
@@ -61,6 +91,18 @@ def test_missing_file_and_folder(tmp_path):
     with pytest.raises(SpectrumError) as caught:
         read_spectrum(tmp_path, "T", None, "w")
     assert str(caught.value) == f"w: '{tmp_path.name}' is a folder; name the file in it"
+
+
+def test_names_that_no_file_can_have_and_files_that_are_none(tmp_path):
+    with pytest.raises(SpectrumError) as caught:
+        read_spectrum(tmp_path / (300 * "x"), "T", None, "w")
+    assert str(caught.value) == f"w: '{300 * 'x'}' cannot be read: File name too long"
+    with pytest.raises(SpectrumError, match="no file"):
+        read_spectrum(tmp_path / "a\0b", "T", None, "w")
+    os.mkfifo(tmp_path / "pipe")
+    with pytest.raises(SpectrumError) as caught:
+        read_spectrum(tmp_path / "pipe", "T", None, "w")
+    assert str(caught.value) == "w: 'pipe' is no plain file; save the spectrum to a file"
 
 
 def pair(tmp_path, reflected, transmitted):
