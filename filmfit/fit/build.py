@@ -36,10 +36,15 @@ FEWEST_POINTS = 10
 
 @dataclass(frozen=True)
 class Built:
-    """A problem, the main layer (run, layer) of each run, the hints for the search, and what was left out."""
+    """A problem, two layers (run, layer) of each run, the hints for the search, and what was left out.
+
+    `main` is the layer that the results speak of, `film` the one that is searched: the same, unless the user marked a
+    layer that is held fixed.
+    """
 
     problem: Problem
     main: tuple[tuple[int, int], ...]
+    film: tuple[tuple[int, int], ...]
     hints_nm: tuple[float | None, ...]
     starting: tuple[Material | None, ...]  # where the main layer of each run came from
     plates: tuple[PlateStart, ...]
@@ -63,7 +68,7 @@ def build_problem(runs: Sequence[RunInput], share_layers: bool = False) -> Built
         raise Faults(builder.faults)
     return Built(
         Problem(tuple(builder.parameters), tuple(builder.runs), tuple(builder.expectations)),
-        tuple(builder.main), tuple(builder.hints), tuple(builder.starting), tuple(builder.plates),
+        tuple(builder.main), tuple(builder.film), tuple(builder.hints), tuple(builder.starting), tuple(builder.plates),
         tuple(builder.left_out),
     )  # fmt: skip
 
@@ -78,6 +83,7 @@ class _Builder:
     runs: list[RunModel] = field(default_factory=list)
     expectations: list[IndexExpectation] = field(default_factory=list)
     main: list[tuple[int, int]] = field(default_factory=list)
+    film: list[tuple[int, int]] = field(default_factory=list)
     hints: list[float | None] = field(default_factory=list)
     starting: list[Material | None] = field(default_factory=list)
     plates: list[PlateStart] = field(default_factory=list)
@@ -115,10 +121,18 @@ class _Builder:
         self.runs.append(RunModel(run_id, scans, layers, plate, instrument))
         fitted = [at for at, layer in enumerate(layers) if layer.dispersion is not None]
         marked = [at for at, layer in enumerate(content.layer) if layer.main]
+        if len(fitted) > 1 and not marked:
+            names = " and ".join(f"'{layers[at].name}'" for at in fitted)
+            self.faults.append(
+                RunFileError(given.file.where("layer"), f"{names} are fitted", "one main layer", "give one main = true")
+            )
+            return
         main = (marked or fitted or [len(layers) - 1])[-1]
+        film = main if main in fitted or not fitted else fitted[-1]
         self.main.append((number, main))
+        self.film.append((number, film))
         self.starting.append(sources[main])
-        self.hints.append(hint_nm(content.layer[main]))
+        self.hints.append(hint_nm(content.layer[film]))
         source = sources[main]
         if source is not None and source.index_550 is not None and layers[main].dispersion is not None:
             self.expectations.append(

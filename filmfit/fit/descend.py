@@ -47,13 +47,11 @@ def descend(problem: Problem, starts: FloatArray, steps: int) -> Trials:
     """
     low, high = (bound[:, None] for bound in problem.bounds())
     values = np.clip(starts, low, high)
-    residual, jacobian = problem.evaluate(values)
-    chi2 = np.sum(residual**2, axis=-1)
+    residual, jacobian, chi2 = _evaluated(problem, values)
     damping = np.full(chi2.shape, FIRST_DAMPING)
     for _ in range(steps):
         trial = np.clip(values + _step(residual, jacobian, damping, values, low, high), low, high)
-        new_residual, new_jacobian = problem.evaluate(trial)
-        new_chi2 = np.sum(new_residual**2, axis=-1)
+        new_residual, new_jacobian, new_chi2 = _evaluated(problem, trial)
         better = new_chi2 < chi2
         small = (chi2 - new_chi2 < SETTLED * chi2) & (damping < UNDAMPED)
         settled = np.all(np.where(better, small, damping > GAVE_UP))
@@ -65,6 +63,19 @@ def descend(problem: Problem, starts: FloatArray, steps: int) -> Trials:
         if settled:
             break
     return Trials(values, chi2)
+
+
+def _evaluated(problem: Problem, values: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Return residuals, derivatives and chi2 (B,); a trial that cannot be computed is infinitely bad."""
+    with np.errstate(over="ignore", invalid="ignore", divide="ignore"):
+        residual, jacobian = problem.evaluate(values)
+        chi2 = np.sum(residual**2, axis=-1)
+    lost = ~np.isfinite(chi2)
+    if lost.any():
+        residual, jacobian = residual.copy(), jacobian.copy()
+        residual[lost], jacobian[:, lost] = 0.0, 0.0
+        chi2 = np.where(lost, np.inf, chi2)
+    return residual, jacobian, chi2
 
 
 def _step(

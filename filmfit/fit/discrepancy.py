@@ -63,6 +63,8 @@ class Freedom:
 def corrected(solution: Solution, run: int, layer: int, freedom: Freedom) -> Problem:
     """Return the problem with a free correction to one layer's law, started at a solution without it.
 
+    A layer without a law, held fixed, is not corrected.
+
     The correction to epsilon2 at a knot is expected to be `size` times the law's own epsilon2 there (plus a floor),
     with a correlation that falls off exponentially over 1 eV, or 0.3 eV where it may hold narrow bands.
 
@@ -76,7 +78,8 @@ def corrected(solution: Solution, run: int, layer: int, freedom: Freedom) -> Pro
     """
     problem = solution.problem
     target = problem.runs[run].layers[layer]
-    assert isinstance(target.dispersion, Dispersion)
+    if not isinstance(target.dispersion, Dispersion):
+        return problem
     wavelength_nm = np.concatenate([scan.wavelength_nm for scan in problem.runs[run].scans if scan.coated])
     correction = _correction(target.dispersion, solution.values[target.laws], wavelength_nm, freedom)
     first = len(problem.parameters)

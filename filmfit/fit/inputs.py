@@ -24,7 +24,12 @@ class RunInput:
 
 
 def scan_of(keys: BareSpectrum | Spectrum, measured: Measured, side: str, back: str, coated: bool) -> Scan:
-    """Return a measured spectrum as the fit uses it, its noise as stated or from its own scatter."""
+    """Return a measured spectrum as the fit uses it, its noise as stated or from its own scatter.
+
+    A rear face is blackened for R alone: T in such a run file was measured before.
+    """
+    if keys.quantity == "T" and back == "blackened":
+        back = "bare"
     sigma = keys.sigma if keys.sigma is not None else noise_sigma(measured.values)
     beam = Beam(keys.quantity, keys.angle_deg, keys.polarization, side, back)  # type: ignore[arg-type]
     return Scan(beam, measured.wavelength_nm, measured.values, np.full(measured.values.size, sigma), coated)

@@ -15,6 +15,23 @@ FREE_LAW_BOUNDS = 1e3
 THICKNESS_START_NM, THICKNESS_LOW_NM, THICKNESS_HIGH_NM = 100.0, 2.0, 3500.0
 
 
+# Laws that no generic material uses: ranges of clear films (common practice, no source).
+PLAIN_STARTS = {
+    "cauchy.a": Start(1.8, 1.0, 4.0),
+    "cauchy.b_um2": Start(0.01, -0.1, 0.3),
+    "cauchy.c_um4": Start(0.0005, -0.02, 0.05),
+    "urbach.k0": Start(0.001, 0.0, 1.0),
+    "urbach.edge_eV": Start(3.5, 1.0, 9.0),
+    "urbach.width_eV": Start(0.3, 0.03, 3.0),
+    "sellmeier.b1": Start(1.0, 0.0, 20.0),
+    "sellmeier.b2": Start(0.4, 0.0, 20.0),
+    "sellmeier.b3": Start(0.8, 0.0, 20.0),
+    "sellmeier.c1_um": Start(0.08, 0.0, 0.25),
+    "sellmeier.c2_um": Start(0.12, 0.0, 0.25),
+    "sellmeier.c3_um": Start(10.0, 6.0, 60.0),
+}
+
+
 def thickness_parameter(name: str, keys: Layer) -> Parameter:
     """Return a layer's thickness: expected, bounded, fixed, or free with a hint for the search."""
     given = keys.thickness_nm
@@ -49,7 +66,7 @@ def law_parameter(name: str, begins: Start, given: float | Value | None) -> Para
 
 def free_starts(dispersion: Dispersion) -> dict[str, Start]:
     """Return starts for a free choice of laws, from the generic materials where they know the parameter."""
-    known: dict[str, Start] = {}
+    known: dict[str, Start] = dict(PLAIN_STARTS)
     for model in STARTING_MODELS.values():
         known = {**material(model).parameters, **known}
     starts = {}

@@ -14,6 +14,7 @@ from filmfit.stack import FloatArray
 
 FIRST_STEPS = 12  # by normal equations, cheaper than the solver's, before it takes over
 CHI2_TOLERANCE = 1e-5  # of chi2: a hundredth of a unit for a thousand points
+FAR = 1e6  # the residual of a point that cannot be computed
 BOUND_MARGIN = 1e-6  # a start this near its bound, as a share of the span, is moved inside
 
 
@@ -66,7 +67,11 @@ class _Cache:
     def at(self, point: FloatArray) -> "_Cache":
         """Evaluate the problem unless it stands at this point already."""
         if self.point is None or not np.array_equal(point, self.point):
-            self.residual, self.jacobian = self.problem.evaluate(point)
+            with np.errstate(over="ignore", invalid="ignore", divide="ignore"):
+                residual, jacobian = self.problem.evaluate(point)
+            # a point that no law survives is only far away; the solver turns back
+            self.residual = np.where(np.isfinite(residual), residual, FAR)
+            self.jacobian = np.where(np.isfinite(jacobian), jacobian, 0.0)
             self.point = point.copy()
             self.evaluations += 1
         return self

@@ -58,12 +58,11 @@ def search(problem: Problem, thickness: int, hint_nm: float | None = None) -> Tr
     """
     coarse = searchable(problem).thinned(COARSE_POINTS)
     starts = _starts(coarse, thickness, hint_nm)
-    row = coarse.free.index(thickness)
     trials = descend(coarse, starts, FIRST_STEPS)
     for keep, each, steps in STAGES:
-        trials = trials.best(_distinct(trials, row, keep, each))
+        trials = trials.best(_distinct(trials, coarse.full(trials.values)[thickness], keep, each))
         trials = descend(coarse, trials.values, steps)
-    trials = trials.best(_distinct(trials, row, KEEP, each=1))
+    trials = trials.best(_distinct(trials, coarse.full(trials.values)[thickness], KEEP, each=1))
     return Trials(coarse.full(trials.values), trials.chi2)
 
 
@@ -83,7 +82,7 @@ FINE_ERRORS = (".offset_nm", ".slit_nm", ".wedge", ".haze_R", ".haze_T")
 def _starts(problem: Problem, thickness: int, hint_nm: float | None) -> FloatArray:
     """Return the starting points (F, B): every thickness with every seed of the carriers."""
     chosen = problem.parameters[thickness]
-    seeds = thickness_seeds(chosen.low, chosen.high)
+    seeds = thickness_seeds(chosen.low, chosen.high) if chosen.vary else np.array([chosen.start])
     if hint_nm is not None:
         seeds = np.append(seeds, hint_nm)
     columns = []
@@ -112,12 +111,12 @@ def _law_seeds(problem: Problem) -> Sequence[Sequence[tuple[int, float]]]:
     ]
 
 
-def _distinct(trials: Trials, row: int, keep: int, each: int) -> FloatArray:
-    """Return the indices of the best trials, at most `each` of one thickness."""
+def _distinct(trials: Trials, depths: FloatArray, keep: int, each: int) -> FloatArray:
+    """Return the indices of the best trials, at most `each` of one thickness; `depths` (B,) are theirs in nm."""
     chosen: list[int] = []
     for index in np.argsort(trials.chi2, kind="stable"):
-        here = trials.values[row, index]
-        near = sum(abs(trials.values[row, other] - here) < max(SAME_NM, SAME_RATIO * here) for other in chosen)
+        here = depths[index]
+        near = sum(abs(depths[other] - here) < max(SAME_NM, SAME_RATIO * here) for other in chosen)
         if near < each:
             chosen.append(int(index))
         if len(chosen) == keep:

@@ -52,7 +52,7 @@ def fit_run(path: str | Path) -> Fitted:
     given = read_run(file)
     built = build_problem([given])
     with threadpool_limits(limits=1, user_api="blas"):
-        outcome = choose(built.problem, built.main[0], built.hints_nm[0])
+        outcome = choose(built.problem, built.film[0], built.hints_nm[0])
         result, curves = _answer(file, given, built, outcome, started)
     return Fitted(result, curves, as_record(file.content), file.sha256)
 
@@ -113,7 +113,7 @@ def _answer(
     main = built.main[0][1]
     results = main_results(file, built, posterior, main, mass)
     difference = tmm_difference(run, solution.values)
-    blunders = suspicions(built.problem, solution, built.main[0])
+    blunders = suspicions(built.problem, solution, built.film[0])
     reasons, answer = judge(file, built, outcome, blunders, fits, results, difference)
     alternatives = [Alternative(thickness_nm=r.thickness_nm, delta_bic=r.delta_bic) for r in outcome.rivals]
     if answer == "unusable":

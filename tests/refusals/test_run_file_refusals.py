@@ -275,6 +275,8 @@ SCAN = "nm,T\n" + "\n".join(f"{x},0.8" for x in range(350, 1000, 10))
         ('"soda-lime-glass"', '"ITO"',
          "run.toml:11: substrate.material: 'ITO' is where a fit begins, not a known material; name a glass: see "
          "'filmfit materials list'"),
+        ('like = "ITO"', 'like = "ITO"\n[[layer]]\nname = "cap"\nmodel = "dielectric"',
+         "run.toml:13: layer: 'film' and 'cap' are fitted; allowed: one main layer; give one main = true"),
         ('like = "ITO"', 'laws = ["constant", "druude"]',
          "run.toml:15: layer[1].laws: unknown law 'druude'; allowed: cauchy, constant, drude, lorentz, sellmeier, "
          "tauc-lorentz, urbach; did you mean 'drude'?"),
