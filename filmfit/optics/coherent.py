@@ -4,9 +4,10 @@ Knows Maxwell's boundary conditions for plane layers, exp(-i w t), n + ik; does 
 
 Each layer's characteristic matrix is multiplied by exp(i delta), so that an opaque layer gives 0 and never overflows.
 With q = exp(2 i delta) it reads [[(1 + q)/2, (1 - q)/(2 Y)], [(1 - q) Y/2, (1 + q)/2]]. All three answers are ratios
-of bilinear forms in the product of these matrices, so one sweep from each side serves every derivative.
+of bilinear forms in the product of these matrices: one sweep from the air gives them, one sweep back every derivative.
 """
 
+import math
 from dataclasses import dataclass
 from typing import Literal, NamedTuple
 
@@ -22,10 +23,14 @@ Vectors = tuple[Term, Term, Term, Term]  # two vectors of two components
 
 
 class Slopes(NamedTuple):
-    """Derivatives of one real number: dX = Re(derivative * d epsilon); thickness derivatives are real, per nm."""
+    """Derivatives of one real number: dX = Re(derivative * d epsilon); thickness derivatives are real, per nm.
+
+    `exit` belongs to the exit medium's epsilon; it is None where it was not asked for.
+    """
 
     epsilon: ComplexArray
     thickness: FloatArray
+    exit: ComplexArray | None
 
 
 class Medium(NamedTuple):
@@ -39,13 +44,32 @@ class Medium(NamedTuple):
 
 
 class _Layer(NamedTuple):
-    """What a layer contributes: its matrix [[u, b], [c, u]], its medium, and 2 pi / lambda times its thickness."""
+    """What a layer contributes: q, its matrix [[u, b], [c, u]], its medium, and 2 pi / lambda times its thickness."""
 
+    q: ComplexArray
     u: ComplexArray
     b: ComplexArray
     c: ComplexArray
     medium: Medium
     depth: FloatArray
+
+
+@dataclass(frozen=True)
+class Bare:
+    """A half-space's own face: intensities (..., W); it reflects the same from both sides."""
+
+    R_front: FloatArray
+    T: FloatArray
+    R_rear: FloatArray
+    _front: ComplexArray
+    _inverse: ComplexArray
+    _per_flux: FloatArray
+    _slope: ComplexArray
+
+    def exit_slopes(self) -> tuple[ComplexArray, ComplexArray]:
+        """Return the derivatives (..., W) of R and T to the exit medium's epsilon: dX = Re(derivative * d epsilon)."""
+        twice = (2.0 * self._inverse) * self._slope
+        return -(self._front.conj() * (twice + self._front * twice)), self._per_flux * self._slope - self.T * twice
 
 
 @dataclass(frozen=True)
@@ -62,75 +86,79 @@ class Face:
     _rear: ComplexArray
     _inverse: ComplexArray
     _layers: tuple[_Layer, ...]
+    _per_flux: FloatArray
     exit: Medium
     _left: tuple[Vectors, ...]
-    _right: tuple[Vectors, ...]
     _wavenumber: FloatArray
     _Y0: float
 
-    def without_layers(self) -> "Face":
+    def without_layers(self) -> Bare:
         """Return the bare face of the same half-space."""
-        return _face(self._Y0, (), self.exit, self._wavenumber)
+        return _bare(self._Y0, self.exit)
 
-    def slopes(self, by_front: FloatArray, by_T: FloatArray, by_rear: FloatArray) -> Slopes:
+    def slopes(self, by_front: FloatArray, by_T: FloatArray, by_rear: FloatArray, *, to_exit: bool = True) -> Slopes:
         """Return the derivatives of any X(R_front, T, R_rear), given its partial derivatives.
 
         Args:
             by_front: dX / dR_front, (..., W) or, for several X at once, (Q, ..., W).
             by_T: dX / dT.
             by_rear: dX / dR_rear.
+            to_exit: False leaves the derivative to the exit medium out (None).
 
         Returns:
-            Derivatives to each layer's dielectric function (L, ..., W) and thickness (L, ..., W); an axis Q, if
-            any, comes before the batch axes.
+            Derivatives to each layer's dielectric function (L, ..., W) and thickness (L, ..., W), and to the exit
+            medium's dielectric function (..., W); an axis Q, if any, comes before the batch axes.
 
-        Reference: product rule on the matrices of `coherent`; tests/identities/test_optics_identities.py.
+        Reference: product rule on the matrices of `coherent`; tests/against/test_optics_against_tmm.py.
         """
         lost, front, both, rear = self._weights(by_front, by_T, by_rear)
         epsilon = np.empty((len(self._layers), *both.shape), complex)
         thickness = np.empty((len(self._layers), *both.shape))
-        for number, (u, b, _, medium, depth) in enumerate(self._layers):
+        right: Vectors = (1.0, self.exit.Y, 1.0, -self.exit.Y)
+        for number in reversed(range(len(self._layers))):
+            layer = self._layers[number]
+            medium = layer.medium
             p0, p1, m0, m1 = self._left[number]
-            r0, r1, s0, s1 = self._right[number + 1]
+            r0, r1, s0, s1 = right
             r1, s1 = r1 * medium.per_Y, s1 * medium.per_Y
-            c1 = front * m1 + both * p1
-            c1 *= medium.Y
-            c0 = front * m0 + both * p0
-            c0 -= c1
-            e1 = rear * (p1 * medium.Y)
-            e0 = rear * p0 - e1
-            r, s = r0 - r1, s0 - s1
-            # the matrix's slope in its phase is i q [[1, -1/Y], [-Y, 1]] with i q = i (2 u - 1)
-            by_phase = (2j * u - 1j) * (c0 * r - e0 * s)
+            p1, m1 = p1 * medium.Y, m1 * medium.Y
+            p, m, r, s = p0 - p1, m0 - m1, r0 - r1, s0 - s1
+            # the matrix's slope in its phase is i q [[1, -1/Y], [-Y, 1]], in Y it is b [[0, -1/Y], [Y, 0]]
+            iq, by_Y = 1j * layer.q, layer.b * medium.slope
+            by_phase = front * (iq * (m * r))
+            by_phase += both * (iq * (p * r))
+            by_phase -= rear * (iq * (p * s))
             by_phase.imag += lost
-            by_Y = c1 * r - c0 * r1
-            by_Y += e0 * s1 - e1 * s
-            by_Y *= b * medium.slope
             thickness[number] = (by_phase * (self._wavenumber * medium.normal)).real
-            by_phase *= (0.5 * depth) * medium.per_normal
-            np.add(by_phase, by_Y, out=epsilon[number])
-        return Slopes(epsilon, thickness)
-
-    def exit_slope(self, by_front: FloatArray, by_T: FloatArray, by_rear: FloatArray) -> ComplexArray:
-        """Return the derivative (..., W) of X(R_front, T, R_rear) to the exit medium's dielectric function."""
-        lost, front, both, rear = self._weights(by_front, by_T, by_rear)
+            by_phase *= (0.5 * layer.depth) * medium.per_normal
+            slope = front * (by_Y * (m1 * r - m * r1))
+            slope += both * (by_Y * (p1 * r - p * r1))
+            slope -= rear * (by_Y * (p1 * s - p * s1))
+            np.add(by_phase, slope, out=epsilon[number])
+            if number:
+                right = _through(layer, right)
+        if not to_exit:
+            return Slopes(epsilon, thickness, None)
         _, p1, _, m1 = self._left[-1]
-        by_Y = front * m1 + (both + rear) * p1
-        by_Y += 0.5 * lost / self.exit.Y.real
-        slope: ComplexArray = by_Y * self.exit.slope
-        return slope
+        both += rear
+        exit_ = front * (m1 * self.exit.slope)
+        exit_ += both * (p1 * self.exit.slope)
+        exit_ += by_T * (self._per_flux * self.exit.slope)
+        return Slopes(epsilon, thickness, exit_)
 
     def _weights(
         self, by_front: FloatArray, by_T: FloatArray, by_rear: FloatArray
     ) -> tuple[FloatArray, ComplexArray, ComplexArray, ComplexArray]:
         """Return 2 T dX/dT and the weights of the bilinear forms: dX = Re(front dA + both dD + rear dB)."""
-        lost = by_T * (2.0 * self.T)
-        front = by_front * (2.0 * self._front.conj() * self._inverse)
-        rear = by_rear * (2.0 * self._rear.conj() * self._inverse)
-        both = front * self._front
-        both += rear * self._rear
-        both += lost * self._inverse
-        return lost, front, np.negative(both, out=both), rear
+        twice = 2.0 * self._inverse
+        lost = by_T * self.T
+        both = by_front * self.R_front
+        both += by_rear * self.R_rear
+        both += lost
+        lost *= 2.0
+        front = by_front * (self._front.conj() * twice)
+        rear = by_rear * (self._rear.conj() * twice)
+        return lost, front, np.multiply(both, np.negative(twice, out=twice), dtype=complex), rear
 
 
 def coherent(
@@ -159,43 +187,59 @@ def coherent(
 
     Holds when: the exit medium absorbs little (k < 1e-4), else intensities seen from inside it are not defined.
     """
-    sine2 = np.sin(np.radians(angle_deg)) ** 2
-    cosine = float(np.sqrt(1.0 - sine2))
+    sine2 = math.sin(math.radians(angle_deg)) ** 2
+    cosine = math.sqrt(1.0 - sine2)
     wavenumber = 2.0 * np.pi / wavelength_nm
     layers = []
     for layer_epsilon, layer_nm in zip(epsilon, thickness_nm, strict=True):
         medium = _medium(layer_epsilon, sine2, polarization)
         depth = wavenumber * np.asarray(layer_nm)[..., None]
         q = np.exp(2j * depth * medium.normal)
-        v = 0.5 - 0.5 * q
-        layers.append(_Layer(0.5 + 0.5 * q, v * medium.per_Y, v * medium.Y, medium, depth))
-    exit_ = _medium(np.asarray(exit_epsilon, complex), sine2, polarization)
+        half = 0.5 * q
+        v = 0.5 - half
+        layers.append(_Layer(q, 0.5 + half, v * medium.per_Y, v * medium.Y, medium, depth))
+    exit_epsilon = np.asarray(exit_epsilon, complex)
+    if exit_epsilon.shape[-1:] != wavelength_nm.shape:
+        exit_epsilon = np.broadcast_to(exit_epsilon, np.broadcast_shapes(exit_epsilon.shape, wavelength_nm.shape))
+    exit_ = _medium(exit_epsilon, sine2, polarization)
     return _face(cosine if polarization == "s" else 1.0 / cosine, tuple(layers), exit_, wavenumber)
 
 
 def _face(Y0: float, layers: tuple[_Layer, ...], exit_: Medium, wavenumber: FloatArray) -> Face:
     """Return the intensities of layers between media of admittance Y0 and Y, with what their slopes need."""
     left: list[Vectors] = [(Y0, 1.0, Y0, -1.0)]
-    for u, b, c, _, _ in layers:
+    for _, u, b, c, _, _ in layers:
         p0, p1, m0, m1 = left[-1]
         left.append((p0 * u + p1 * c, p0 * b + p1 * u, m0 * u + m1 * c, m0 * b + m1 * u))
-    right: list[Vectors] = [(1.0, exit_.Y, 1.0, -exit_.Y)]
-    for u, b, c, _, _ in reversed(layers):
-        r0, r1, s0, s1 = right[-1]
-        right.append((u * r0 + b * r1, c * r0 + u * r1, u * s0 + b * s1, c * s0 + u * s1))
-    right.reverse()
-    r0, r1, s0, s1 = right[0]
-    inverse = np.asarray(1.0 / (Y0 * r0 + r1), complex)
-    front = np.asarray((Y0 * r0 - r1) * inverse, complex)
-    rear = np.asarray((Y0 * s0 + s1) * -inverse, complex)
+    p0, p1, m0, m1 = left[-1]
+    p1, m1 = p1 * exit_.Y, m1 * exit_.Y
+    inverse = 1.0 / (p0 + p1)
+    front = (m0 + m1) * inverse
+    rear = (p1 - p0) * inverse
     absorbed = sum(2.0 * layer.depth * layer.medium.normal.imag for layer in layers)
-    T = (4.0 * Y0) * exit_.Y.real * _intensity(inverse)
+    per_flux = (4.0 * Y0) * _intensity(inverse)
     if layers:
-        T = T * np.exp(-absorbed)
+        per_flux *= np.exp(-absorbed)
     return Face(
-        _intensity(front), T, _intensity(rear), front, rear, inverse,
-        layers, exit_, tuple(left), tuple(right), wavenumber, Y0,
+        _intensity(front), per_flux * exit_.Y.real, _intensity(rear), front, rear, inverse,
+        layers, per_flux, exit_, tuple(left), wavenumber, Y0,
     )  # fmt: skip
+
+
+def _bare(Y0: float, exit_: Medium) -> Bare:
+    """Return the face between media of admittance Y0 and Y: `_face` without layers, in closed form."""
+    inverse = 1.0 / (Y0 + exit_.Y)
+    front = (Y0 - exit_.Y) * inverse
+    per_flux = (4.0 * Y0) * _intensity(inverse)
+    R = _intensity(front)
+    return Bare(R, per_flux * exit_.Y.real, R, front, inverse, per_flux, exit_.slope)
+
+
+def _through(layer: _Layer, right: Vectors) -> Vectors:
+    """Return the layer's matrix times two columns."""
+    r0, r1, s0, s1 = right
+    u, b, c = layer.u, layer.b, layer.c
+    return u * r0 + b * r1, c * r0 + u * r1, u * s0 + b * s1, c * s0 + u * s1
 
 
 def _intensity(amplitude: ComplexArray) -> FloatArray:
@@ -204,12 +248,19 @@ def _intensity(amplitude: ComplexArray) -> FloatArray:
     return intensity
 
 
+def _decaying(normal: ComplexArray) -> ComplexArray:
+    """Return the root with Im >= 0; a layer's matrix is the same for both, and only this one cannot overflow."""
+    grows = normal.imag < 0
+    return np.where(grows, -normal, normal) if grows.any() else normal
+
+
 def _medium(epsilon: ComplexArray, sine2: float, polarization: str) -> Medium:
     """Return a medium's N cos(theta), its tilted admittance and the slope of that in epsilon.
 
-    The principal square root has Im >= 0 for epsilon in the upper half plane: the wave decays forward.
+    The principal square root has Im >= 0 for epsilon in the upper half plane: the wave decays forward. Adding +0i
+    takes an imaginary part of -0 to the same side of the root's cut.
     """
-    normal: ComplexArray = np.sqrt(epsilon - sine2)
+    normal = _decaying(np.sqrt(epsilon + complex(-sine2)))
     per_normal: ComplexArray = 1.0 / normal
     if polarization == "s":
         half: ComplexArray = 0.5 * per_normal

@@ -9,7 +9,7 @@ from typing import Literal
 
 import numpy as np
 
-from filmfit.optics.coherent import ComplexArray, Face, FloatArray, coherent
+from filmfit.optics.coherent import Bare, ComplexArray, Face, FloatArray, coherent
 
 Quantity = Literal["R", "T"]
 Back = Literal["bare", "blackened", "rough", "index-matched"]
@@ -107,24 +107,27 @@ def _one_polarization(
 ) -> tuple[PlateResponse, ...]:
     """Return the wanted quantities for light of one polarization; `path` is 4 pi ds / lambda.
 
-    The partial derivatives of all quantities go through the layers in one pass: (6 + 1, Q, ..., W).
+    The partial derivatives of all quantities go through the layers in one pass: (6, Q, ..., W).
     """
     rear = film.without_layers()
     tau = np.exp(-path * film.exit.normal.imag)
+    share = 1.0 / (1.0 - film.R_rear * rear.R_rear * tau**2)
     values = []
-    partials = np.empty((7, len(quantities), *film.T.shape))
+    partials = np.empty((6, len(quantities), *film.T.shape))
     for number, quantity in enumerate(quantities):
         combine = _reflected if quantity == "R" else _transmitted
-        value, *rows = combine(film, rear, tau, side, back)
+        value, *rows = combine(film, rear, tau, share, side, back)
         values.append(value)
         for row, partial in enumerate(rows):
             partials[row, number] = partial
-    slopes = film.slopes(*partials[:3])
-    d_substrate = np.zeros(partials.shape[1:], complex)
-    if plate_slopes:
-        d_substrate += film.exit_slope(*partials[:3])
-        d_substrate += rear.exit_slope(*partials[3:6])
-        d_substrate += partials[6] * (tau * (0.5j * path) * film.exit.per_normal)
+    slopes = film.slopes(*partials[:3], to_exit=plate_slopes)
+    d_substrate = slopes.exit
+    if d_substrate is None:
+        d_substrate = np.zeros(partials.shape[1:], complex)
+    else:
+        by_tau = (tau * path * 0.5j) * film.exit.per_normal
+        for partial, slope in zip(partials[3:], (*rear.exit_slopes(), by_tau), strict=True):
+            d_substrate += partial * slope
     return tuple(
         PlateResponse(value, slopes.epsilon[:, number], slopes.thickness[:, number], d_substrate[number])
         for number, value in enumerate(values)
@@ -132,38 +135,38 @@ def _one_polarization(
 
 
 Term = FloatArray | float
-# value, then its partial derivatives to the film face's front, T, rear, the bare face's front, T, rear, and tau
-Combined = tuple[FloatArray, Term, Term, Term, Term, Term, Term, Term]
+# value, then its partial derivatives to the film face's front, T, rear, the bare face's R (both ways the same), T, tau
+Combined = tuple[FloatArray, Term, Term, Term, Term, Term, Term]
 
 
-def _reflected(film: Face, rear: Face, tau: FloatArray, side: Side, back: Back) -> Combined:
-    """Return R and its partial derivatives."""
+def _reflected(film: Face, rear: Bare, tau: FloatArray, share: FloatArray, side: Side, back: Back) -> Combined:
+    """Return R and its partial derivatives; `share` sums the light's rounds between the faces."""
     if back != "bare":
-        return film.R_front, 1.0, 0.0, 0.0, 0.0, 0.0, 0.0, 0.0
-    tau2 = tau**2
-    share = 1.0 / (1.0 - film.R_rear * rear.R_rear * tau2)
+        return film.R_front, 1.0, 0.0, 0.0, 0.0, 0.0, 0.0
     # light enters through one face, is returned by the other, leaves through the first again
     first, other = (film, rear) if side == "film" else (rear, film)
-    returned = other.R_rear * tau2 * share
-    value = first.R_front + first.T**2 * returned
-    by_T = 2.0 * first.T * returned
-    by_first_rear = (first.T * returned) ** 2
-    by_other_rear = first.T**2 * tau2 * share**2
-    by_tau = 2.0 * first.T**2 * other.R_rear * tau * share**2
+    back_and_forth = tau**2 * share
+    returned = other.R_rear * back_and_forth
+    through = first.T * returned
+    value = first.R_front + first.T * through
+    by_T = 2.0 * through
+    by_first_rear = through**2
+    by_other_rear = first.T**2 * back_and_forth * share
+    by_tau = (2.0 * first.T**2) * other.R_rear * tau * share**2
     if side == "film":
-        return value, 1.0, by_T, by_first_rear, 0.0, 0.0, by_other_rear, by_tau
-    return value, 0.0, 0.0, by_other_rear, 1.0, by_T, by_first_rear, by_tau
+        return value, 1.0, by_T, by_first_rear, by_other_rear, 0.0, by_tau
+    return value, 0.0, 0.0, by_other_rear, 1.0 + by_first_rear, by_T, by_tau
 
 
-def _transmitted(film: Face, rear: Face, tau: FloatArray, side: Side, back: Back) -> Combined:
-    """Return T and its partial derivatives."""
+def _transmitted(film: Face, rear: Bare, tau: FloatArray, share: FloatArray, side: Side, back: Back) -> Combined:
+    """Return T and its partial derivatives; `share` sums the light's rounds between the faces."""
     if back == "index-matched":
-        return film.T * tau, 0.0, tau, 0.0, 0.0, 0.0, 0.0, film.T
+        return film.T * tau, 0.0, tau, 0.0, 0.0, 0.0, film.T
     if back != "bare":
-        return np.zeros_like(film.T), 0.0, 0.0, 0.0, 0.0, 0.0, 0.0, 0.0
-    share = 1.0 / (1.0 - film.R_rear * rear.R_rear * tau**2)
-    value = film.T * rear.T * tau * share
-    per_film, per_rear = rear.T * tau * share, film.T * tau * share
-    returned = value * tau**2 * share
+        return np.zeros_like(film.T), 0.0, 0.0, 0.0, 0.0, 0.0, 0.0
+    arriving = tau * share
+    per_film, per_rear = rear.T * arriving, film.T * arriving
+    value = film.T * per_film
+    returned = value * tau * arriving
     by_tau = film.T * rear.T * share * (2.0 * share - 1.0)
-    return value, 0.0, per_film, returned * rear.R_rear, 0.0, per_rear, returned * film.R_rear, by_tau
+    return value, 0.0, per_film, returned * rear.R_rear, returned * film.R_rear, per_rear, by_tau

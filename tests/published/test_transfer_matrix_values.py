@@ -48,6 +48,14 @@ def test_quarter_wave_of_magnesium_fluoride_on_glass(wavelength, angle, polariza
     assert found == pytest.approx((R, T), abs=TOLERANCE)
 
 
+def test_quarter_wave_on_both_faces_of_a_lossless_slab():
+    # the face's R, seen from inside as from outside, summed over the rounds between two such faces: 2 R / (1 + R)
+    R = coherent(np.array([550.0]), np.array([[1.38**2 + 0j]]), np.array([MGF2_NM]), np.array([1.52**2 + 0j]), 0.0, "s")
+    assert R.R_front == pytest.approx(R.R_rear, abs=1e-12)
+    both = R.R_front + R.T**2 * R.R_rear / (1 - R.R_rear**2)
+    assert both == pytest.approx(0.0248879723, abs=TOLERANCE)
+
+
 def test_quarter_wave_formula():
     # R = ((n0 ns - n^2) / (n0 ns + n^2))^2 at the design wavelength, Born and Wolf ch. 1.6
     assert face(550, [(1.38, MGF2_NM)], 1.52, 0, "s")[0] == pytest.approx(
@@ -97,6 +105,43 @@ def test_absorbing_film_on_thick_glass_from_both_sides(case, angle, polarization
 
 
 @pytest.mark.parametrize(
+    ("case", "angle", "polarization", "absorbed"),
+    [
+        ("visible", 0, "s", 0.0416974269),
+        ("visible", 8, "s", 0.0418201429),
+        ("visible", 8, "p", 0.0417806660),
+        ("visible", 45, "s", 0.0449894635),
+        ("visible", 45, "p", 0.0438543697),
+        ("infrared", 0, "s", 0.3263725658),
+        ("infrared", 8, "s", 0.3265740953),
+        ("infrared", 8, "p", 0.3367877550),
+        ("infrared", 45, "s", 0.3232680478),
+        ("infrared", 45, "p", 0.5525809242),
+    ],
+)
+def test_light_absorbed_in_the_film(case, angle, polarization, absorbed):
+    # what neither leaves the film nor comes back, on the way in and on every return from the plate's rear face; in a
+    # medium that absorbs, the flux of two opposite waves has a cross term, 2 Im(r) Im(Y) / Re(Y)
+    wavelength, film, glass = ABSORBING[case]
+    vacuum, plate_epsilon = np.array([float(wavelength)]), np.array([glass**2])
+    face_ = coherent(vacuum, np.array([[film**2]]), np.array([150.0]), plate_epsilon, angle, polarization)
+    bare = face_.without_layers()
+    tau = np.exp(-4 * np.pi * 1.1e6 * np.sqrt(glass**2 - np.sin(np.radians(angle)) ** 2).imag / wavelength)
+    upward = face_.T * tau**2 * bare.R_rear / (1 - face_.R_rear * bare.R_rear * tau**2)
+    crossed = 2 * face_._rear.imag * face_.exit.Y.imag / face_.exit.Y.real
+    lost = (1 - face_.R_front - face_.T) + upward * (1 - face_.R_rear - face_.T + crossed)
+    assert lost == pytest.approx(absorbed, abs=TOLERANCE)
+
+
+@pytest.mark.parametrize(("case", "tau"), [("visible", 0.9875122565), ("infrared", 0.9817381294)])
+def test_what_one_passage_of_the_glass_leaves(case, tau):
+    wavelength, _, glass = ABSORBING[case]
+    (through,) = plate("T", np.array([float(wavelength)]), np.empty((0, 1), complex), np.empty(0),
+                       np.array([glass**2]), 1.1e6, 0.0, "s", "film", "index-matched")  # fmt: skip
+    assert through.value[0] / face(wavelength, [], glass, 0, "s")[1] == pytest.approx(tau, abs=TOLERANCE)
+
+
+@pytest.mark.parametrize(
     ("case", "R", "T"), [("visible", 0.0851377999, 0.8611588859), ("infrared", 0.1515597696, 0.5065145787)]
 )
 def test_unpolarised_light_at_eight_degrees(case, R, T):
@@ -128,6 +173,13 @@ def test_silver_between_oxides(case, angle, polarization, R_half, T_half, R_slab
     assert slab(wavelength, layers, 1.52, 1e6, angle, polarization) == pytest.approx((R_slab, T_slab), abs=TOLERANCE)
     from_glass = slab(wavelength, layers, 1.52, 1e6, angle, polarization, "substrate")
     assert from_glass[0] == pytest.approx(R_glass, abs=TOLERANCE)
+
+
+@pytest.mark.parametrize(
+    ("index", "R"), [(1.45846, 0.0347757582), (1.50, 0.04), (1.51, 0.0412850590), (1.52, 0.0425799950)]
+)
+def test_bare_face(index, R):
+    assert face(550, [], index, 0, "s") == pytest.approx((R, 1 - R), abs=TOLERANCE)
 
 
 @pytest.mark.parametrize(
