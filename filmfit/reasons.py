@@ -118,6 +118,26 @@ TABLE: dict[str, Entry] = {
         "measure further into the ultraviolet, on silica if need be",
         "usable",
     ),
+    "rate-not-determined": Entry(
+        "the run file states no deposition time: the rate is left open",
+        "give time_s or time_min",
+        "usable",
+    ),
+    "mass-not-known": Entry(
+        "no effective mass is known well enough: carrier density and mobility are left open",
+        "state effective_mass and effective_mass_sigma in [electrical]",
+        "usable",
+    ),
+    "thickness-given": Entry(
+        "the thickness was given, not measured",
+        "leave thickness_nm out, or give it a sigma",
+        "usable",
+    ),
+    "far-from-expected": Entry(
+        "{parameter} = {value:.4g} lies {sigmas:.1f} sigma from what was expected of it",
+        "check the expectation, and the layers that are declared",
+        "check",
+    ),
     "four-point-compared": Entry(
         "the four-point probe reads {probe:.4g} ohm, {sigmas:.1f} sigma from the optical value",
         "a higher probe value is usual where grain boundaries or a surface layer hinder direct current",

@@ -26,6 +26,7 @@ POOR_RMS = 0.02
 OPAQUE_TRANSMITTANCE = 0.005
 COUPLED_RELATIVE_SIGMA = 0.02
 SUM_SIGMAS = 3.0
+NEAR_NORMAL_DEG = 15.0
 THIN_SUBSTRATE_MM = 0.2
 BOUND_SHARE = 1e-3
 LARGEST_TMM_DIFFERENCE = 1e-6
@@ -66,8 +67,12 @@ def judge(
         reasons.append(reason("outside-material-range", material=name, low=low, high=high))
     if file.content.substrate.thickness_mm < THIN_SUBSTRATE_MM:
         reasons.append(reason("thin-substrate", thickness_mm=file.content.substrate.thickness_mm))
-    depth = results.thickness_nm
     reasons += comparison_reasons(file, results)
+    depth = results.thickness_nm
+    if depth is not None and depth.low == depth.high:
+        reasons.append(reason("thickness-given", "thickness_nm"))
+    if depth is not None and results.rate_nm_min is None and file.content.layer[built.main[0][1]].deposited:
+        reasons.append(reason("rate-not-determined", "rate_nm_min"))
     limit_nm = source.continuous_above_nm if source is not None else None
     if limit_nm is not None and depth is not None and depth.value is not None and depth.value < limit_nm:
         reasons.append(reason("not-a-continuous-film", "thickness_nm", thickness_nm=depth.value))
@@ -91,8 +96,11 @@ def quantity_reasons(results: Results, laws: tuple[str, ...], scans: list[Scan])
             reasons.append(reason("carriers-not-determined", "plasma_energy_eV", longest_nm=longest))
         elif results.resistivity_ohm_cm is None:
             reasons.append(reason("damping-not-determined", "resistivity_ohm_cm"))
-    if "tauc-lorentz" in laws and results.energy_at_1e4_eV is None:
-        reasons.append(reason("gap-not-determined", "energy_at_1e4_eV"))
+    if results.plasma_energy_eV is not None and results.carrier_density_cm3 is None:
+        reasons.append(reason("mass-not-known", "carrier_density_cm3"))
+    for name in ("energy_at_1e4_eV", "gap_direct_eV"):
+        if "tauc-lorentz" in laws and getattr(results, name) is None:
+            reasons.append(reason("gap-not-determined", name))
     if results.gap_direct_eV is not None and results.gap_direct_eV.value is None:
         reasons.append(reason("no-linear-part", "gap_direct_eV"))
     return reasons
@@ -146,14 +154,20 @@ def parameter_reasons(solution: Solution) -> list[Reason]:
     for index in solution.problem.free:
         p, value = solution.problem.parameters[index], float(solution.values[index])
         scope, name = p.name.partition(".")[0], p.name.rpartition(".")[2]
-        if name in WATCHED and p.sigma is not None:
+        if name.startswith(WATCHED) and p.sigma is not None:
             expected = p.expected if p.expected is not None else p.start
             sigmas = abs(value - expected) / p.sigma
             if sigmas > NUISANCE_SIGMAS:
                 (instrument if scope == "instrument" else plate).append(f"{name} = {value:.4g} ({sigmas:.1f} sigma)")
-        elif scope in ("layer", "material") and ".correction." not in p.name and _on_bound(p, value):
-            bound = p.low if value - p.low < p.high - value else p.high
-            reasons.append(reason("at-a-bound", parameter=p.name.partition("/")[2] or p.name, bound=bound))
+        elif scope in ("layer", "material") and ".correction." not in p.name:
+            label = p.name.partition("/")[2] or p.name
+            expected = p.expected if p.expected is not None else p.start
+            sigmas = abs(value - expected) / p.sigma if p.sigma else 0.0
+            if sigmas > NUISANCE_SIGMAS:
+                reasons.append(reason("far-from-expected", parameter=label, value=value, sigmas=sigmas))
+            if _on_bound(p, value):
+                bound = p.low if value - p.low < p.high - value else p.high
+                reasons.append(reason("at-a-bound", parameter=label, bound=bound))
     if instrument:
         reasons.append(reason("nuisance-far-off", nuisances=", ".join(instrument)))
     if plate:
@@ -170,7 +184,7 @@ def _on_bound(parameter: Parameter, value: float) -> bool:
 def scan_reasons(scans: list[Scan], scale_sigma: float) -> list[Reason]:
     """Return what the measured numbers say by themselves: R + T above 1, an opaque film."""
     reasons = []
-    coated = [scan for scan in scans if scan.coated]
+    coated = [scan for scan in scans if scan.coated and scan.beam.angle_deg <= NEAR_NORMAL_DEG]
     transmitted = [scan for scan in coated if scan.beam.quantity == "T"]
     reflected = [scan for scan in coated if scan.beam.quantity == "R" and scan.beam.side == "film"]
     for t in transmitted[:1]:

@@ -2,7 +2,7 @@
 
 The film has two interband transitions, whose dispersion is integrated numerically from their absorption, and free
 carriers: none of it is computed by filmfit. R and T come from the general-purpose package tmm. Run it again and the
-same bytes come out:
+same bytes come out, and the true values are printed:
 
     python make_data.py [FOLDER]
 
@@ -18,7 +18,9 @@ import numpy as np
 import tmm
 
 HC_EV_NM = 1239.841984
-THICKNESS_NM, PLASMA_EV, DAMPING_EV = 212.0, 1.72, 0.104
+THICKNESS_NM, PLASMA_EV, DAMPING_EV, MASS = 212.0, 1.72, 0.104, 0.35
+# CODATA 2018: charge in C, electron mass in kg, vacuum permittivity in F/m, hbar in J s.
+E_C, M_KG, EPSILON_0, HBAR = 1.602176634e-19, 9.1093837015e-31, 8.8541878128e-12, 1.054571817e-34
 GLASS_NM = 1.1e6
 SCALE_R, SCALE_T, OFFSET_NM, NOISE, SEED = 1.004, 0.998, 0.2, 0.001, 20260417
 
@@ -71,8 +73,22 @@ def spectrum(quantity: str, wavelength_nm: np.ndarray, angle_deg: float, coated:
     return np.array(values)
 
 
+def truth() -> dict[str, float]:
+    """Return what an ideal fit would find, from the Drude model's plasma energy and damping."""
+    density_m3 = (PLASMA_EV * E_C / HBAR) ** 2 * EPSILON_0 * MASS * M_KG / E_C**2
+    mobility_m2 = HBAR / (DAMPING_EV * MASS * M_KG)
+    return {
+        "thickness_nm": THICKNESS_NM,
+        "plasma_energy_eV": PLASMA_EV,
+        "damping_eV": DAMPING_EV,
+        "carrier_density_cm3": density_m3 * 1e-6,
+        "mobility_cm2_Vs": mobility_m2 * 1e4,
+        "sheet_resistance_ohm": 1 / (density_m3 * E_C * mobility_m2 * THICKNESS_NM * 1e-9),
+    }
+
+
 def main(folder: Path) -> None:
-    """Write scan.csv and bare.csv."""
+    """Write scan.csv and bare.csv; print what is true."""
     rng = np.random.default_rng(SEED)
     shown = np.arange(320.0, 2201.0, 5.0)
     for name, coated in (("scan.csv", True), ("bare.csv", False)):
@@ -83,6 +99,8 @@ def main(folder: Path) -> None:
         lines = ["Wavelength (nm),T (%),R (%)"]
         lines += [f"{nm:.0f},{t:.3f},{r:.3f}" for nm, t, r in zip(*columns, strict=True)]
         (folder / name).write_text("\n".join(lines) + "\n", encoding="utf-8")
+    for quantity, value in truth().items():
+        print(f"{quantity} = {value:.4g}")
 
 
 if __name__ == "__main__":

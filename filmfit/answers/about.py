@@ -30,7 +30,8 @@ def nuisances(posterior: Posterior) -> dict[str, Nuisance]:
         if scope in ("instrument", "plate", "run"):
             got = posterior.parameter(int(index))
             expected = p.expected if p.expected is not None else p.start
-            found[p.name.rpartition(".")[2]] = Nuisance(**got.model_dump(), expected=expected)
+            inside = {"low": max(got.low or 0.0, p.low), "high": min(got.high or 0.0, p.high)}
+            found[p.name.rpartition(".")[2]] = Nuisance(**{**got.model_dump(), **inside}, expected=expected)
     return found
 
 
@@ -42,6 +43,8 @@ def assumptions(file: RunFile, built: Built, mass: Expectation | None) -> tuple[
         said.append(f"plate: index of {plate.material} within {plate.index_shift_sigma:g}, absorption as measured")
     else:
         said.append(f"plate: {plate.material}, index within {plate.index_shift_sigma:g}")
+    if file.content.substrate.back == "blackened" and any(one.quantity == "T" for one in file.content.spectrum):
+        said.append("T was measured before the rear face was blackened")
     if len(file.content.layer) == 1:
         said.append("film directly on the plate, smooth, the same at every depth")
     source = built.starting[0]
@@ -72,14 +75,14 @@ def limits(file: RunFile, results: Results) -> dict[str, LimitState]:
     return states
 
 
-def summary(outcome: Outcome, fits: list[Reading], seconds: float) -> FitSummary:
+def summary(outcome: Outcome, film: int, fits: list[Reading], seconds: float) -> FitSummary:
     """Return how the fit went."""
     solution = outcome.solution
     rms: dict[str, float | None] = {}
     for quantity in ("R", "T"):
         parts = [fit.rms**2 for fit in fits if fit.scan.coated and fit.scan.beam.quantity == quantity]
         rms[quantity] = float(np.sqrt(np.mean(parts))) if parts else None
-    layer = solution.problem.runs[0].layers[-1]
+    layer = solution.problem.runs[0].layers[film]
     laws = dict.fromkeys(name.partition(".")[0] for name in layer.dispersion.names) if layer.dispersion else {}
     model = " + ".join(name for name in laws if name != "correction")
     return FitSummary(

@@ -24,12 +24,18 @@ def main_results(file: RunFile, built: Built, posterior: Posterior, main: int, m
     longest = max(float(scan.wavelength_nm[-1]) for scan in coated)
     return Results(
         thickness_nm=depth,
-        top_nm=depth if len(file.content.layer) == 1 else None,
+        top_nm=_top(posterior),
         index_550=index_550(found) if shortest <= 550 <= longest else None,
         rate_nm_min=rate(depth, keys.time_s or file.content.run.time_s) if keys.deposited else None,
         **gaps(found, HC_EV_NM / longest, HC_EV_NM / shortest),
         **carriers(found, mass),
     )
+
+
+def _top(posterior: Posterior) -> Quantity | None:
+    """Return the distance from the plate to the outer surface in nm, all layers together."""
+    depths = [layer.thickness for layer in posterior.solution.problem.runs[0].layers]
+    return posterior.positive(lambda values: float(sum(values[at] for at in depths)))
 
 
 def effective_mass(file: RunFile, built: Built) -> Expectation | None:
@@ -40,7 +46,7 @@ def effective_mass(file: RunFile, built: Built) -> Expectation | None:
         return library
     sigma = stated.effective_mass_sigma
     if sigma is None:
-        sigma = 0.0
+        sigma = library.sigma if library is not None else 0.0
     return Expectation(stated.effective_mass, sigma, "run file")
 
 

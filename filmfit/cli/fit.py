@@ -3,19 +3,20 @@
 Knows options, order of output and exit status; the job stands in jobs/fit.py.
 """
 
+from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import click
 
-from filmfit.cli.options import json_option, records_option
+from filmfit.cli.options import json_option, records_option, tell
 
 if TYPE_CHECKING:
     from filmfit.jobs.fit import Fitted
     from filmfit.records.store import Filed
 
 UNUSABLE, FAULTY = 1, 2
-LATER = ("--together", "--map", "--workers", "--cluster")
 
 
 def _later(context: click.Context, option: click.Parameter, value: object) -> None:
@@ -55,11 +56,7 @@ def fit(
 
     if verbose:
         _log_to_standard_error()
-    if not no_records:
-        from filmfit.records.store import Records
-
-        with Records(records):  # refuses before anything is computed
-            pass
+    _refuse_places(None if no_records else records, json_to, report)
     status, answers = 0, []
     for run_file in run_files:
         answer, code = _one(run_file, None if no_records else records, report, json_to == "-", quiet)
@@ -70,24 +67,52 @@ def fit(
     return status
 
 
+def _refuse_places(records: str | None, json_to: str | None, report: Path | None) -> None:
+    """Refuse records, a file or a folder that cannot be written, before anything is computed."""
+    from filmfit.cli.options import must_be_writable
+    from filmfit.errors import UsageError
+
+    if json_to not in (None, "-"):
+        must_be_writable(Path(str(json_to)))
+    if report is not None:
+        try:
+            report.mkdir(parents=True, exist_ok=True)
+        except OSError as error:
+            raise UsageError(str(report), f"cannot be made: {error.strerror}", do="name another folder") from error
+    if records is not None:
+        from filmfit.records.store import Records
+
+        with Records(records):
+            pass
+
+
 def _one(
     run_file: Path, records: str | None, report: Path | None, silent: bool, quiet: bool
 ) -> tuple[dict[str, Any], int]:
-    """Fit, draw, file and print one run; a fault costs this run only."""
-    from filmfit.errors import Faults, FilmfitError
+    """Fit, file, draw and print one run; a fault costs this run only, a picture's fault the picture only."""
+    from filmfit.errors import Faults, FilmfitError, UsageError
     from filmfit.jobs.fit import fit_run
 
+    picture = None
     try:
-        fitted = fit_run(run_file)
-        picture = _draw(fitted, records, report)
-        filed = _file(fitted, records)
+        with _stage(f"{run_file}: read and fitted"):
+            fitted = fit_run(run_file)
+        with _stage(f"{run_file}: filed"):
+            filed = _file(fitted, records)
     except (Faults, FilmfitError) as error:
-        click.echo(str(error), err=True)
+        tell(error)
         first = error.errors[0] if isinstance(error, Faults) else error
         return {"run": run_file.stem, "error": first.as_dict()}, FAULTY
+    code = UNUSABLE if fitted.result.answer == "unusable" else 0
+    try:
+        with _stage(f"{run_file}: drawn"):
+            picture = _draw(fitted, records, report)
+    except UsageError as error:
+        tell(error)
+        code = FAULTY
     if not silent:
         _print(fitted, filed, picture, quiet)
-    return fitted.result.as_dict(), UNUSABLE if fitted.result.answer == "unusable" else 0
+    return fitted.result.as_dict(), code
 
 
 def _file(fitted: "Fitted", records: str | None) -> "Filed | None":
@@ -104,19 +129,10 @@ def _draw(fitted: "Fitted", records: str | None, report: Path | None) -> Path | 
     """Draw a fit beside the records, or in the report's folder; without either, not at all."""
     if report is None and records is None:
         return None
-    from filmfit.cli.options import write_whole
-    from filmfit.errors import UsageError
+    from filmfit.cli.options import records_path, write_whole
     from filmfit.report.figures import draw_fit
 
-    folder = Path()
-    if report is not None:
-        folder = report
-        try:
-            folder.mkdir(parents=True, exist_ok=True)
-        except OSError as error:
-            raise UsageError(str(folder), f"cannot be made: {error.strerror}", do="name another folder") from error
-    elif records is not None and "://" not in records:
-        folder = Path(records).parent
+    folder = report if report is not None else records_path(str(records)).parent
     picture = folder / f"{fitted.result.run}-fit.svg"
     write_whole(picture, draw_fit(fitted.result, fitted.curves))
     return picture
@@ -138,8 +154,23 @@ def _print(fitted: "Fitted", filed: "Filed | None", picture: Path | None, quiet:
     click.echo(fit_text(fitted.result, tail))
 
 
+@contextmanager
+def _stage(name: str) -> Iterator[None]:
+    """Log a stage of the work with the time it took."""
+    import logging
+    import time
+
+    started = time.perf_counter()
+    yield
+    logging.getLogger("filmfit.cli").info("%s in %.2f s", name, time.perf_counter() - started)
+
+
 def _log_to_standard_error() -> None:
-    """Show the rooms' own log lines."""
+    """Show filmfit's own log lines, and no other package's."""
     import logging
 
-    logging.basicConfig(level=logging.INFO, format="%(relativeCreated)7.0f ms  %(name)s: %(message)s")
+    shown = logging.StreamHandler()
+    shown.setFormatter(logging.Formatter("%(relativeCreated)7.0f ms  %(name)s: %(message)s"))
+    log = logging.getLogger("filmfit")
+    log.addHandler(shown)
+    log.setLevel(logging.INFO)

@@ -3,6 +3,7 @@
 Knows words and exit status; every command's work is imported inside its body, so that --help is instant.
 """
 
+import os
 import sys
 from collections.abc import Sequence
 
@@ -12,10 +13,12 @@ from filmfit import __version__
 from filmfit.cli.fit import fit
 from filmfit.cli.materials import materials
 from filmfit.cli.new import new
+from filmfit.cli.options import tell
 from filmfit.cli.runs import runs
 
 WRONG_USE = 2
-INTERRUPTED = 130
+INTERRUPTED = 130  # 128 + SIGINT, as shells have it
+READER_GONE = 141  # 128 + SIGPIPE
 
 
 @click.group(
@@ -35,27 +38,60 @@ for command in (new, fit, runs, materials):
 
 def main(arguments: Sequence[str] | None = None) -> None:
     """Run the command line and leave with its exit status; every fault is a line on standard error."""
-    from filmfit.errors import Faults, FilmfitError
-
     for stream in (sys.stdout, sys.stderr):
         if hasattr(stream, "reconfigure"):
             stream.reconfigure(errors="replace")
     try:
+        status = _run(arguments)
+        sys.stdout.flush()
+    except OSError as error:
+        _let_go_of_output()
+        gone = isinstance(error, BrokenPipeError)
+        if not gone:
+            click.echo(f"standard output: cannot be written: {error.strerror}", err=True)
+        status = READER_GONE if gone else WRONG_USE
+    sys.exit(status)
+
+
+def _run(arguments: Sequence[str] | None) -> int:
+    """Run the command line and return its exit status.
+
+    Raises:
+        OSError: standard output cannot be written; every other file's fault is told where it is met.
+    """
+    from filmfit.errors import Faults, FilmfitError
+
+    try:
         status = cli.main(args=arguments, prog_name="filmfit", standalone_mode=False)
     except (Faults, FilmfitError) as error:
-        click.echo(str(error), err=True)
-        status = WRONG_USE
+        tell(error)
+        return WRONG_USE
     except click.ClickException as error:
-        where = error.ctx.command_path if isinstance(error, click.UsageError) and error.ctx else "filmfit"
-        click.echo(f"{where}: {' '.join(error.format_message().split())}; see '{where} --help'", err=True)
-        status = WRONG_USE
+        tell(_one_line(error))
+        return WRONG_USE
     except (KeyboardInterrupt, click.Abort):
         click.echo("filmfit: stopped by the keyboard; what was filed before is kept", err=True)
-        status = INTERRUPTED
-    except BrokenPipeError:
-        sys.stderr.close()
-        status = 0
-    sys.exit(status if isinstance(status, int) else 0)
+        return INTERRUPTED
+    except SystemExit as error:  # so click ends when the reader of standard output has gone
+        raise BrokenPipeError from error
+    return status if isinstance(status, int) else 0
+
+
+def _one_line(error: click.ClickException) -> click.ClickException:
+    """Return a wrong use of the command line as one line that names the help to read."""
+    context = error.ctx if isinstance(error, click.UsageError) else None
+    where = context.command_path if context else "filmfit"
+    said = " ".join(error.format_message().split()).rstrip(".")
+    if isinstance(error, click.exceptions.NoArgsIsHelpError) and context and isinstance(context.command, click.Group):
+        said = f"no command given; allowed: {', '.join(context.command.list_commands(context))}"
+    return click.ClickException(f"{where}: {said}; see '{where} --help'")
+
+
+def _let_go_of_output() -> None:
+    """Point standard output at nothing, so that the interpreter's last flush does not fail again."""
+    nothing = os.open(os.devnull, os.O_WRONLY)
+    os.dup2(nothing, sys.stdout.fileno())
+    os.close(nothing)
 
 
 if __name__ == "__main__":

@@ -56,11 +56,11 @@ def show(run: str, records: str, json_to: str | None) -> None:
 
 def _must_exist(records: str) -> None:
     """Refuse to make new records where someone only wants to look."""
-    from pathlib import Path
-
+    from filmfit.cli.options import records_path
     from filmfit.errors import RecordsError
 
-    if "://" not in records and not Path(records).exists():
+    local = "://" not in records or records.startswith("sqlite:///")
+    if local and not records_path(records).exists():
         raise RecordsError(records, "no such records", do="file a run with 'filmfit fit', or name them with --records")
 
 

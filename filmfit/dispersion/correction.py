@@ -26,7 +26,7 @@ def hat_epsilon(energy_eV: FloatArray, knots_eV: FloatArray) -> ComplexArray:
         (K, E) complex.
 
     Reference: piecewise representation of epsilon2 with analytic epsilon1: Johs and Hale, Phys. Status Solidi A 205,
-        715 (2008) (from memory); tests/against/test_correction.py integrates the relation numerically.
+        715 (2008) (from memory); tests/against/test_kramers_kronig.py integrates the relation numerically.
     """
     terms = _x_log_x(knots_eV[:, None] - energy_eV) + _x_log_x(knots_eV[:, None] + energy_eV)
     rise = 1.0 / np.diff(knots_eV)

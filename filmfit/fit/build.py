@@ -14,22 +14,24 @@ from filmfit.dispersion.compose import Dispersion
 from filmfit.errors import Faults, FilmfitError, MaterialError, RunFileError, nearest
 from filmfit.fit.inputs import RunInput, scan_of
 from filmfit.fit.model import InstrumentModel, LayerModel, PlateModel, RunModel
-from filmfit.fit.parameters import STARTING_MODELS, free_starts, hint_nm, law_parameter, thickness_parameter
+from filmfit.fit.parameters import (
+    STARTING_MODELS,
+    free_starts,
+    hint_nm,
+    instrument_parameters,
+    law_parameter,
+    thickness_parameter,
+)
 from filmfit.fit.plate import PlateStart, plate_from_scans, plate_of_material
 from filmfit.fit.problem import IndexExpectation, Parameter, Problem
 from filmfit.fit.scan import Scan
 from filmfit.materials import Material, material
-from filmfit.runfile.keys import Instrument, Layer
+from filmfit.runfile.keys import Layer
 from filmfit.runfile.load import RunFile
 
 GLASSES = ("soda-lime-glass", "fused-silica", "borosilicate-crown-517642")
-SCALE_LOW, SCALE_HIGH = 0.8, 1.2
-OFFSET_LIMIT_NM = 3.0
-# Errors that no run file states: typical values of the trade (common practice, no source).
-SLIT_NM, SLIT_SIGMA_NM, SLIT_LOW_NM, SLIT_HIGH_NM = 2.0, 1.5, 0.05, 10.0
-SLIT_STATED_SHARE = 0.2
-WEDGE_START, WEDGE_SIGMA, WEDGE_LOW, WEDGE_HIGH = 0.005, 0.01, 1e-4, 0.1
-HAZE_SIGMA, HAZE_HIGH = 0.03, 0.5  # free only where the data ask for it (choose.py)
+# Iron and its state change the ultraviolet edge, the visible and the infrared band apart (common practice, no source).
+FACTOR_KNOTS_NM = np.array([330.0, 380.0, 450.0, 600.0, 800.0, 1050.0, 1400.0, 2200.0])
 PLATE_INDEX_LIMIT, PLATE_SHIFT_LIMIT, PLATE_FACTOR_HIGH = 0.1, 0.1, 10.0
 FEWEST_POINTS = 10
 
@@ -117,7 +119,8 @@ class _Builder:
         if len(self.faults) > before:
             return
         plate = self.plate(run_id, content.substrate.thickness_mm, plate_material, scans)
-        instrument = self.instrument(run_id, content.instrument)
+        errors = instrument_parameters(run_id, content.instrument)
+        instrument = InstrumentModel(*(self.parameter(one) for one in errors))
         self.runs.append(RunModel(run_id, scans, layers, plate, instrument))
         fitted = [at for at, layer in enumerate(layers) if layer.dispersion is not None]
         marked = [at for at, layer in enumerate(content.layer) if layer.main]
@@ -214,7 +217,11 @@ class _Builder:
         """Return a layer's model and note its parameters."""
         run_id = file.content.run.id
         stem = f"layer.{run_id}/{keys.name}"
-        thickness = self.parameter(thickness_parameter(f"{stem}.thickness_nm", keys))
+        try:
+            thickness = self.parameter(thickness_parameter(f"{stem}.thickness_nm", keys))
+        except ValueError as error:
+            self.faults.append(RunFileError(file.where("layer", at, "thickness_nm"), str(error)))
+            return LayerModel(keys.name, 0)
         if keys.material is not None:
             return LayerModel(keys.name, thickness, material=source)
         try:
@@ -237,9 +244,9 @@ class _Builder:
         owner = f"material.{keys.name}" if self.share_layers else stem
         begins = source.parameters if source is not None else free_starts(dispersion)
         indices = []
-        for name in dispersion.names:
+        for name, legal in zip(dispersion.names, dispersion.parameters, strict=True):
             try:
-                made = law_parameter(f"{owner}.{name}", begins[name], keys.parameters.get(name))
+                made = law_parameter(f"{owner}.{name}", begins[name], keys.parameters.get(name), legal)
             except ValueError as error:
                 self.faults.append(RunFileError(file.where("layer", at, "parameters", name), str(error)))
                 continue
@@ -260,40 +267,18 @@ class _Builder:
         self.plates.append(start)
         stem = f"plate.{run_id}"
         factor, shift = start.absorbance_factor_sigma, start.absorbance_shift_sigma
-        return PlateModel(
-            thickness_mm, start.wavelength_nm, start.index, start.absorbance,
-            self.parameter(
-                Parameter(f"{stem}.index_shift", 0.0, -PLATE_INDEX_LIMIT, PLATE_INDEX_LIMIT, 0.0,
-                          start.index_shift_sigma)
-            ),
-            self.parameter(
-                Parameter(f"{stem}.absorbance_factor", 1.0, 0.0, PLATE_FACTOR_HIGH, 1.0, factor or None, factor > 0)
-            ),
-            self.parameter(
-                Parameter(f"{stem}.absorbance_shift", 0.0, -PLATE_SHIFT_LIMIT, PLATE_SHIFT_LIMIT, 0.0, shift,
-                          shift is not None)
-            ),
-            measured,
-        )  # fmt: skip
-
-    def instrument(self, run_id: str, keys: Instrument) -> InstrumentModel:
-        """Return the instrument's model and note its errors; runs of one instrument share them."""
-        stem = f"instrument.{keys.id}"
-        slit = keys.slit_nm if keys.slit_nm is not None else SLIT_NM
-        slit_sigma = SLIT_SIGMA_NM if keys.slit_nm is None else max(SLIT_STATED_SHARE * slit, 0.1)
-        haze = [
-            self.parameter(Parameter(f"run.{run_id}.haze_{one}", 0.0, 0.0, HAZE_HIGH, 0.0, HAZE_SIGMA, vary=False))
-            for one in ("R", "T")
-        ]
-        return InstrumentModel(
-            self.parameter(Parameter(f"{stem}.scale_R", 1.0, SCALE_LOW, SCALE_HIGH, 1.0, keys.scale_sigma_R)),
-            self.parameter(Parameter(f"{stem}.scale_T", 1.0, SCALE_LOW, SCALE_HIGH, 1.0, keys.scale_sigma_T)),
-            self.parameter(
-                Parameter(f"{stem}.offset_nm", 0.0, -OFFSET_LIMIT_NM, OFFSET_LIMIT_NM, 0.0, keys.offset_sigma_nm)
-            ),
-            self.parameter(
-                Parameter(f"{stem}.slit_nm", max(slit, SLIT_LOW_NM), SLIT_LOW_NM, SLIT_HIGH_NM, slit, slit_sigma)
-            ),
-            self.parameter(Parameter(f"run.{run_id}.wedge", WEDGE_START, WEDGE_LOW, WEDGE_HIGH, 0.0, WEDGE_SIGMA)),
-            *haze,
+        knots = np.array([0.0]) if factor == 0 or measured else FACTOR_KNOTS_NM
+        factors = tuple(
+            self.parameter(Parameter(f"{stem}.{name}", 1.0, 0.0, PLATE_FACTOR_HIGH, 1.0, factor or None, factor > 0))
+            for name in ("absorbance_factor", *(f"absorbance_factor_{nm:.0f}" for nm in knots[1:]))
         )
+        index_shift = Parameter(
+            f"{stem}.index_shift", 0.0, -PLATE_INDEX_LIMIT, PLATE_INDEX_LIMIT, 0.0, start.index_shift_sigma
+        )
+        absorbance_shift = Parameter(
+            f"{stem}.absorbance_shift", 0.0, -PLATE_SHIFT_LIMIT, PLATE_SHIFT_LIMIT, 0.0, shift, shift is not None
+        )
+        return PlateModel(
+            thickness_mm, start.wavelength_nm, start.index, start.absorbance, self.parameter(index_shift), knots,
+            factors, self.parameter(absorbance_shift), measured,
+        )  # fmt: skip

@@ -26,6 +26,7 @@ RANKING_BANDS = Freedom(1.0, bands=True)
 # No film obeys a law to better than a percent, so there is always a little.
 FREEDOMS = (Freedom(0.01), Freedom(0.03), Freedom(0.1), Freedom(0.3))
 BAND_FREEDOMS = (Freedom(0.3, bands=True), Freedom(1.0, bands=True), Freedom(3.0, bands=True))
+NEAR_END = 0.999  # a thickness beyond this share of the largest is the end of the search, not a minimum
 STRANGE = 0.1  # a law that must be corrected this much may be a rough film instead
 HAZE = (".haze_R", ".haze_T")
 HAZE_START = 0.01
@@ -135,7 +136,12 @@ def _unfitted(problem: Problem) -> Solution:
 
 def _rivals(ranked: list[Solution], thickness: int) -> tuple[Rival, ...]:
     """Return all but the best of ranked solutions by thickness and evidence."""
-    return tuple(Rival(float(other.values[thickness]), badness(other) - badness(ranked[0])) for other in ranked[1:])
+    highest = ranked[0].problem.parameters[thickness].high * NEAR_END if ranked else 0.0
+    return tuple(
+        Rival(float(other.values[thickness]), badness(other) - badness(ranked[0]))
+        for other in ranked[1:]
+        if other.values[thickness] < highest
+    )
 
 
 @dataclass(frozen=True)
@@ -150,7 +156,8 @@ def _refined(problem: Problem, thickness: int, hint_nm: float | None) -> list[So
     """Return distinct solutions of the law alone, best first."""
     quick = searchable(problem)
     trials = search(problem, thickness, hint_nm)
-    promising = [n for n in range(trials.chi2.size) if trials.chi2[n] < HOPELESS * trials.chi2[0]][:REFINED]
+    others = [n for n in range(1, trials.chi2.size) if trials.chi2[n] < HOPELESS * trials.chi2[0]]
+    promising = [0, *others[: REFINED - 1]]
     return _distinct([solve(quick.started(trials.values[:, n])) for n in promising], thickness)
 
 

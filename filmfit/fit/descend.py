@@ -43,7 +43,7 @@ def descend(problem: Problem, starts: FloatArray, steps: int) -> Trials:
     Returns:
         The best point each trial has seen.
 
-    Reference: Marquardt, J. Soc. Ind. Appl. Math. 11, 431 (1963); tests/rooms/test_descend.py.
+    Reference: Marquardt, J. Soc. Ind. Appl. Math. 11, 431 (1963); tests/rooms/test_search_and_solve.py.
     """
     low, high = (bound[:, None] for bound in problem.bounds())
     values = np.clip(starts, low, high)

@@ -56,12 +56,17 @@ class Posterior:
         Returns:
             The quantity, or None where its relative uncertainty exceeds 100 %: the data do not determine it.
         """
-        value = function(self.solution.values)
+        with np.errstate(all="ignore"):
+            value = float(function(self.solution.values))
+        if not (np.isfinite(value) and value > 0):
+            return None
         slopes = self.gradient(function) / value
         relative = float(np.sqrt(slopes @ self.covariance @ slopes + relative_sigma**2))
-        if not (np.isfinite(relative) and value > 0) or relative > LARGEST_RELATIVE_SIGMA:
+        if not np.isfinite(relative) or relative > LARGEST_RELATIVE_SIGMA:
             return None
         spread = float(np.exp(COVERAGE_FACTOR * relative))
+        if not np.isfinite(value * spread):
+            return None
         return Quantity.between(value, value / spread, value * spread)
 
     def parameter(self, index: int) -> Quantity:
@@ -86,7 +91,7 @@ def residual_growth(solution: Solution) -> float:
     points carry less information than their number: the variance grows by the sum of their autocorrelation.
 
     Reference: effective number of observations: Bayley and Hammersley, J. R. Stat. Soc. Suppl. 8, 184 (1946);
-        tests/rooms/test_interval.py.
+        tests/rooms/test_scan_and_interval.py.
     """
     residual, _ = solution.problem.evaluate(solution.values[list(solution.problem.free)])
     start, chi2, growths = 0, 0.0, []

@@ -62,9 +62,14 @@ class PlateModel:
     index: FloatArray
     absorbance: FloatArray  # natural logarithm, one pass at normal incidence
     index_shift: int
-    absorbance_factor: int
+    factor_nm: FloatArray  # knots between which the factors on the absorbance are interpolated
+    absorbance_factors: tuple[int, ...]
     absorbance_shift: int
     measured: bool
+
+    def shares(self, wavelength_nm: FloatArray) -> FloatArray:
+        """Return the weight (K, W) of each factor at the wavelengths: unit hats on the knots."""
+        return np.array([np.interp(wavelength_nm, self.factor_nm, row) for row in np.eye(self.factor_nm.size)])
 
     def at(self, wavelength_nm: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Return index and absorbance (W,) interpolated at the wavelengths."""
@@ -229,7 +234,8 @@ def _substrate(
 ) -> tuple[ComplexArray, dict[int, ComplexArray]]:
     """Return the plate's dielectric function (..., W) and its derivatives by parameter index."""
     index, absorbance = plate.at(wavelength_nm)
-    factor = values[plate.absorbance_factor][..., None]
+    shares = plate.shares(wavelength_nm)
+    factor = sum(values[at][..., None] * share for at, share in zip(plate.absorbance_factors, shares, strict=True))
     total = factor * absorbance + values[plate.absorbance_shift][..., None]
     absorbs = total > 0
     k_per_absorbance = wavelength_nm / (4 * np.pi * plate.thickness_mm * 1e6)
@@ -237,6 +243,8 @@ def _substrate(
     by_absorbance = 2j * n * k_per_absorbance * absorbs
     return n**2, {
         plate.index_shift: 2 * n,
-        plate.absorbance_factor: by_absorbance * absorbance,
+        **{
+            at: by_absorbance * (absorbance * share) for at, share in zip(plate.absorbance_factors, shares, strict=True)
+        },
         plate.absorbance_shift: by_absorbance,
     }

@@ -14,6 +14,7 @@ from filmfit.stack import FloatArray
 
 FIRST_STEPS = 12  # by normal equations, cheaper than the solver's, before it takes over
 CHI2_TOLERANCE = 1e-5  # of chi2: a hundredth of a unit for a thousand points
+STEEPEST = 1e12
 FAR = 1e6  # the residual of a point that cannot be computed
 BOUND_MARGIN = 1e-6  # a start this near its bound, as a share of the span, is moved inside
 
@@ -70,8 +71,8 @@ class _Cache:
             with np.errstate(over="ignore", invalid="ignore", divide="ignore"):
                 residual, jacobian = self.problem.evaluate(point)
             # a point that no law survives is only far away; the solver turns back
-            self.residual = np.where(np.isfinite(residual), residual, FAR)
-            self.jacobian = np.where(np.isfinite(jacobian), jacobian, 0.0)
+            self.residual = np.clip(np.where(np.isfinite(residual), residual, FAR), -FAR, FAR)
+            self.jacobian = np.clip(np.where(np.isfinite(jacobian), jacobian, 0.0), -STEEPEST, STEEPEST)
             self.point = point.copy()
             self.evaluations += 1
         return self
@@ -84,7 +85,7 @@ def solve(problem: Problem, max_evaluations: int = 200) -> Solution:
         problem: residuals in units of their noise; starting values and bounds.
         max_evaluations: where to stop at the latest.
 
-    Reference: Branch, Coleman, Li, SIAM J. Sci. Comput. 21, 1 (1999) for the solver; tests/rooms/test_solve.py.
+    Reference: Branch, Coleman, Li, SIAM J. Sci. Comput. 21, 1 (1999) for the solver; tests/rooms/test_search_and_solve.py.
     """
     begun = problem.start_values()[list(problem.free)]
     near = descend(problem, begun[:, None], min(FIRST_STEPS, max_evaluations)).values[:, 0]
@@ -100,7 +101,9 @@ def solve(problem: Problem, max_evaluations: int = 200) -> Solution:
     def point(given: lmfit.Parameters) -> FloatArray:
         return np.array([given[f"p{number}"].value for number in range(len(problem.free))])
 
-    with np.errstate(invalid="ignore"):  # lmfit's own error bars of undetermined parameters; ours are wide instead
+    with np.errstate(
+        invalid="ignore", over="ignore", divide="ignore"
+    ):  # lmfit's own error bars of undetermined parameters; ours are wide instead
         found = lmfit.minimize(
             lambda given: cache.at(point(given)).residual.copy(),
             parameters,
@@ -132,5 +135,6 @@ def covariance(jacobian: FloatArray) -> FloatArray:
     normal = (jacobian / scale[:, None]) @ (jacobian / scale[:, None]).T
     eigenvalues, vectors = np.linalg.eigh(normal)
     inverse = (vectors / np.maximum(eigenvalues, 1e-12)) @ vectors.T
-    spread: FloatArray = inverse / np.outer(scale, scale)
+    with np.errstate(over="ignore"):
+        spread: FloatArray = inverse / np.outer(scale, scale)
     return spread

@@ -27,6 +27,8 @@ from filmfit.spectra.read import check_sum, read_spectrum
 from filmfit.spectra.spectrum import Spectrum
 from filmfit.verdict import judge
 
+NEAR_NORMAL_DEG = 15.0  # up to here R and T of one film may be added
+
 
 @dataclass(frozen=True)
 class Fitted:
@@ -86,8 +88,9 @@ def read_run(file: RunFile) -> RunInput:
 def _sum_faults(file: RunFile, coated: list[Spectrum]) -> list[FilmfitError]:
     """Return what is wrong with R and T of one side taken together."""
     pairs = list(zip(file.content.spectrum, coated, strict=True))
-    reflected = [one for keys, one in pairs if keys.quantity == "R" and keys.side == "film"]
-    transmitted = [one for keys, one in pairs if keys.quantity == "T"]
+    near = [(keys, one) for keys, one in pairs if keys.angle_deg <= NEAR_NORMAL_DEG]
+    reflected = [one for keys, one in near if keys.quantity == "R" and keys.side == "film"]
+    transmitted = [one for keys, one in near if keys.quantity == "T"]
     if not reflected or not transmitted:
         return []
     try:
@@ -131,7 +134,7 @@ def _answer(
         alternatives=tuple(alternatives),
         assumptions=assumptions(file, built, mass),
         limits=limits(file, results),
-        fit=summary(outcome, fits, time.perf_counter() - started),
+        fit=summary(outcome, built.film[0][1], fits, time.perf_counter() - started),
         provenance=provenance(file, given, difference),
     )
     return result, tuple(curve(fit) for fit in fits)

@@ -64,6 +64,8 @@ def told(error: SQLAlchemyError, address: str) -> RecordsError:
 
 def _url(address: str) -> URL:
     """Return the address as a URL; what is no URL is a file."""
+    if not address.strip() or address in ("sqlite://", "sqlite:///:memory:"):
+        raise RecordsError(address or "--records", "names no lasting records", "a file name or dialect://...")
     if "://" not in address:
         return URL.create("sqlite", database=str(Path(address)))
     try:

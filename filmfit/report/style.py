@@ -16,6 +16,9 @@ INK = "#222222"
 QUANTITY_COLOURS = MappingProxyType({("T", "film"): BLUE, ("R", "film"): VERMILION, ("R", "substrate"): GREEN,
                                      ("T", "substrate"): BLUE})  # fmt: skip
 
+# Kinds of line, in order, for curves of one colour.
+DASHES = ("-", "--", "-.", ":")
+
 SETTINGS: MappingProxyType[str, Any] = MappingProxyType(
     {
         "font.family": "DejaVu Sans",
@@ -28,6 +31,7 @@ SETTINGS: MappingProxyType[str, Any] = MappingProxyType(
         "xtick.color": INK,
         "ytick.color": INK,
         "lines.linewidth": 1.4,
+        "text.parse_math": False,
         "svg.hashsalt": "filmfit",
         "svg.fonttype": "path",
     }

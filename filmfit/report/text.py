@@ -3,20 +3,22 @@
 Knows words, digits and layout; computes nothing.
 """
 
+from __future__ import annotations
+
 import math
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from io import StringIO
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
-from rich.box import SIMPLE_HEAD
-from rich.console import Console
-from rich.table import Table
+from filmfit.report.plain import plain
 
-from filmfit.materials import Material
-from filmfit.records.store import RunRecord, RunSummary
-from filmfit.result import Quantity, Result
+if TYPE_CHECKING:
+    from filmfit.materials import Material
+    from filmfit.records.store import RunRecord, RunSummary
+    from filmfit.result import Quantity, Result
 
-WIDTH = 110
+WIDTH = 160
+LARGEST_PLAIN, SMALLEST_PLAIN, MOST_DECIMALS = 1e7, 0.01, 6  # beyond: with an exponent
 ANSWERS = {
     "usable": "USABLE: the numbers below may be used",
     "check": "CHECK: a person must look before the numbers are used",
@@ -38,15 +40,22 @@ LABELS = (
 )
 
 
-def number(value: float, sigma: float | None) -> str:
-    """Return a value with as many digits as two digits of its sigma allow, at least three."""
+def number(value: float, sigma: float | None, beside: float | None = None) -> str:
+    """Return a value with as many digits as two digits of its sigma allow.
+
+    Args:
+        value: what is written.
+        sigma: its standard uncertainty; None or 0 gives four digits.
+        beside: the value that it stands beside, whose notation (plain or with an exponent) it takes; default itself.
+    """
     if sigma is None or sigma <= 0 or not math.isfinite(sigma):
         return f"{value:.4g}"
     place = math.floor(math.log10(sigma)) - 1
-    magnitude = math.floor(math.log10(abs(value))) if value else 0
-    if not -4 <= magnitude <= 6:
-        return f"{value:.{max(1, min(8, magnitude - place))}e}"
-    return f"{round(value, -place):.{max(0, -place)}f}"
+    size = abs(value if beside is None else beside)
+    if size >= LARGEST_PLAIN or (size < SMALLEST_PLAIN and place < -MOST_DECIMALS):
+        digits = math.floor(math.log10(abs(value))) - place if value else 1
+        return f"{value:.{max(1, min(8, digits))}e}"
+    return f"{round(value, -place) + 0.0:.{max(0, -place)}f}"  # + 0.0: no minus sign before a zero
 
 
 def quantity(got: Quantity | None, unit: str) -> str:
@@ -58,16 +67,15 @@ def quantity(got: Quantity | None, unit: str) -> str:
         if got.low is not None:
             return f"at least {number(got.low, None)}{tail}"
         return f"at most {number(got.high or 0.0, None)}{tail}"
-    ends = " to ".join(number(end, got.sigma) for end in (got.low, got.high) if end is not None)
+    ends = " to ".join(number(end, got.sigma, got.value) for end in (got.low, got.high) if end is not None)
     return f"{number(got.value, got.sigma)}{tail}   (95 %: {ends})"
 
 
 def one_line(result: Result) -> str:
     """Return a result on one line."""
     codes = ", ".join(dict.fromkeys(one.code for one in result.reasons))
-    return f"{result.run}: {result.answer}, {quantity(result.results.thickness_nm, 'nm')}" + (
-        f"; {codes}" if codes else ""
-    )
+    depth = quantity(result.results.thickness_nm, "nm")
+    return plain(f"{result.run}: {result.answer}, {depth}" + (f"; {codes}" if codes else ""))
 
 
 def fit_text(result: Result, tail: Sequence[str] = ()) -> str:
@@ -77,7 +85,7 @@ def fit_text(result: Result, tail: Sequence[str] = ()) -> str:
         result: what the fit answered.
         tail: last lines: where it was filed, where the picture is.
     """
-    lines = [f"{result.run}   {result.film}", ANSWERS[result.answer]]
+    lines = [f"{result.run}   {result.film}   {ANSWERS[result.answer]}"]
     for one in result.reasons:
         lines += [f"  {one.code}: {one.text}", f"      {one.do}"]
     lines.append("")
@@ -97,8 +105,12 @@ def fit_text(result: Result, tail: Sequence[str] = ()) -> str:
     lines.append("taken for granted")
     lines += [f"  {said}" for said in result.assumptions]
     lines.append("")
-    lines += [_summary(result), *tail]
-    return "\n".join(lines)
+    return _page([*lines, _summary(result), *tail])
+
+
+def _page(lines: Iterable[str]) -> str:
+    """Return lines as one text, each of them one line whatever the run file holds."""
+    return "\n".join(plain(line) for line in lines)
 
 
 def _quantities(result: Result) -> list[str]:
@@ -128,7 +140,9 @@ def _instrument(result: Result) -> list[str]:
     """Return the errors of instrument and plate that the fit found, beside what was expected."""
     lines = ["instrument and plate, as the fit found them"]
     for name, got in result.instrument.items():
-        lines.append(f"  {name:<31}{number(got.value, got.sigma)} +- {got.sigma:.2g}   (expected {got.expected:g})")
+        lines.append(
+            f"  {name:<31}{number(got.value, got.sigma)} +- {_short_sigma(got.sigma)}   (expected {got.expected:g})"
+        )
     return [*lines, ""]
 
 
@@ -162,14 +176,13 @@ def run_text(record: RunRecord) -> str:
     for number_, when, changes in record.revisions[1:]:
         lines.append(f"revision {number_}, {when:%Y-%m-%d %H:%M} UTC")
         lines += [f"  {one.key}: {one.old} -> {one.new}" for one in changes]
-    lines.append("")
     rows = [
         (str(fit.number), str(fit.revision), f"{fit.created:%Y-%m-%d %H:%M}", fit.answer,
          quantity(fit.thickness_nm, "nm"), _short(fit.rate_nm_min))
         for fit in record.fits
     ]  # fmt: skip
-    return (
-        "\n".join(lines) + "\n" + _table(("fit", "revision", "filed (UTC)", "answer", "thickness", "rate nm/min"), rows)
+    return f"{_page([*lines, ''])}\n" + _table(
+        ("fit", "revision", "filed (UTC)", "answer", "thickness", "rate nm/min"), rows
     )
 
 
@@ -199,14 +212,20 @@ def material_text(one: Material) -> str:
     for label, expected in (("index at 550 nm", one.index_550), ("effective mass", one.effective_mass)):
         if expected is not None:
             lines.append(f"{label}: {expected.value:g} +- {expected.sigma:g} ({expected.reference})")
-    return "\n".join(lines)
+    return _page(lines)
 
 
 def _short(got: Quantity | None) -> str:
     """Return a quantity as value +- sigma."""
     if got is None or got.value is None:
         return "-"
-    return f"{number(got.value, got.sigma)} +- {got.sigma:.2g}" if got.sigma is not None else f"{got.value:.4g}"
+    tail = "" if got.sigma is None else f" +- {_short_sigma(got.sigma)}"
+    return f"{number(got.value, got.sigma)}{tail}"
+
+
+def _short_sigma(sigma: float) -> str:
+    """Return a standard uncertainty with its two digits."""
+    return number(sigma, sigma)
 
 
 def _flat(content: Any, key: str = "") -> list[tuple[str, Any]]:
@@ -219,12 +238,16 @@ def _flat(content: Any, key: str = "") -> list[tuple[str, Any]]:
 
 
 def _table(heads: Sequence[str], rows: Sequence[Sequence[str]], right: Sequence[int] = ()) -> str:
-    """Return a plain table; every text is taken as it is."""
+    """Return a plain table; every text is taken as it is, but for control characters."""
+    from rich.box import SIMPLE_HEAD
+    from rich.console import Console
+    from rich.table import Table
+
     table = Table(box=SIMPLE_HEAD, pad_edge=False, safe_box=True)
     for at, head in enumerate(heads):
         table.add_column(head, justify="right" if at in right else "left", overflow="fold")
     for row in rows:
-        table.add_row(*row)
+        table.add_row(*[plain(cell) for cell in row])
     out = StringIO()
-    Console(file=out, width=max(WIDTH, 160), markup=False, highlight=False, emoji=False, color_system=None).print(table)
+    Console(file=out, width=WIDTH, markup=False, highlight=False, emoji=False, color_system=None).print(table)
     return "\n".join(line.rstrip() for line in out.getvalue().strip("\n").splitlines())

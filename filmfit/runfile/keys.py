@@ -164,7 +164,7 @@ class BareSpectrum(Keys):
 class Substrate(Keys):
     """[substrate]: the thick plate."""
 
-    thickness_mm: Positive
+    thickness_mm: Annotated[float, Field(gt=0, le=100)]
     material: Name | None = None
     back: Literal["bare", "blackened", "index-matched"] = "bare"
     spectrum: Annotated[tuple[BareSpectrum, ...], Field(strict=False)] = ()

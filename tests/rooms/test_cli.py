@@ -19,7 +19,7 @@ def run(*arguments, cwd, **environment):
 def test_the_example_from_end_to_end(example, tmp_path, checkout):
     told = run("fit", example / "run.toml", "--json", "out.json", cwd=tmp_path)
     assert told.returncode == 0, told.stderr
-    assert "USABLE" in told.stdout.splitlines()[1]
+    assert "USABLE" in told.stdout.splitlines()[0]
     assert "filed as fit 1 of run C1-0231, revision 1" in told.stdout
     picture = tmp_path / "C1-0231-fit.svg"
     assert picture.read_bytes().startswith(b"<?xml")
@@ -97,7 +97,7 @@ def test_json_on_standard_output_is_nothing_else(example, tmp_path):
     ("arguments", "line"),
     [
         (["fti"], "filmfit: No such command 'fti'. Did you mean 'fit'?; see 'filmfit --help'"),
-        (["fit"], "filmfit fit: Missing argument 'RUN.toml...'.; see 'filmfit fit --help'"),
+        (["fit"], "filmfit fit: Missing argument 'RUN.toml...'; see 'filmfit fit --help'"),
         (["fit", "x.toml", "--together"], "filmfit fit: --together is not supported yet; see 'filmfit fit --help'"),
         (["fit", "x.toml", "--workers", "4"], "filmfit fit: --workers is not supported yet; see 'filmfit fit --help'"),
         (["fit", "x.toml", "--no-records"], "x.toml: no such file; write one with 'filmfit new'"),
