@@ -88,7 +88,8 @@ def noise_sigma(values: FloatArray) -> float:
         Standard deviation of the noise, fraction, not under 1e-4.
 
     Reference: differences of order m carry the noise variance binomial(2m, m) (Gasser, Sroka, Jennen-Steinmetz,
-        Biometrika 73, 625 (1986)); the median keeps edges and steps from counting; tests/rooms/test_scan_and_interval.py.
+        Biometrika 73, 625 (1986)); the median keeps edges and steps from counting;
+        tests/rooms/test_scan_and_interval.py.
 
     Holds when: the curve is smooth over five points.
     """

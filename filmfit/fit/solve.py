@@ -85,7 +85,8 @@ def solve(problem: Problem, max_evaluations: int = 200) -> Solution:
         problem: residuals in units of their noise; starting values and bounds.
         max_evaluations: where to stop at the latest.
 
-    Reference: Branch, Coleman, Li, SIAM J. Sci. Comput. 21, 1 (1999) for the solver; tests/rooms/test_search_and_solve.py.
+    Reference: Branch, Coleman, Li, SIAM J. Sci. Comput. 21, 1 (1999) for the solver;
+        tests/rooms/test_search_and_solve.py.
     """
     begun = problem.start_values()[list(problem.free)]
     near = descend(problem, begun[:, None], min(FIRST_STEPS, max_evaluations)).values[:, 0]

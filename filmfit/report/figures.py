@@ -125,9 +125,10 @@ def _residuals(axes: Axes, coated: Sequence[Curve]) -> None:
     axes.set_ylim(-limit, limit)
     axes.set_ylabel("measured - fit\n(percentage points)")
     axes.set_xlabel("wavelength (nm)")
-    band_says = "grey band:\n\N{PLUS-MINUS SIGN}2 sigma of\nthe noise"
-    axes.annotate(band_says, (1.0, 0.0), xycoords=("axes fraction", "data"), xytext=(5, 0), textcoords="offset points", va="center", fontsize=8.5, color=INK,
-                  annotation_clip=False)  # fmt: skip
+    axes.annotate(
+        "grey band:\n\N{PLUS-MINUS SIGN}2 sigma of\nthe noise", (1.0, 0.0), xycoords=("axes fraction", "data"),
+        xytext=(5, 0), textcoords="offset points", va="center", fontsize=8.5, annotation_clip=False,
+    )  # fmt: skip
 
 
 def _wavelength_and_energy(axes: Axes, curves: Sequence[Curve]) -> None:
