@@ -12,7 +12,6 @@ Knows how a refusal is worded; does not know who raises it.
 """
 
 from collections.abc import Iterable
-from difflib import get_close_matches
 
 
 class FilmfitError(Exception):
@@ -87,5 +86,7 @@ def nearest(word: str, known: Iterable[str]) -> str:
         word: what the user wrote.
         known: the words that are allowed.
     """
+    from difflib import get_close_matches  # only on the way to an error: start-up stays instant
+
     close = get_close_matches(word, list(known), n=1, cutoff=0.6)
     return f"did you mean '{close[0]}'?" if close else ""

@@ -44,12 +44,16 @@ def main(arguments: Sequence[str] | None = None) -> None:
     try:
         status = _run(arguments)
         sys.stdout.flush()
-    except OSError as error:
+    except BrokenPipeError:
         _let_go_of_output()
-        gone = isinstance(error, BrokenPipeError)
-        if not gone:
-            click.echo(f"standard output: cannot be written: {error.strerror}", err=True)
-        status = READER_GONE if gone else WRONG_USE
+        status = READER_GONE
+    except OSError as error:
+        status = WRONG_USE
+        if error.filename is None:
+            _let_go_of_output()
+            tell(click.ClickException(f"standard output: cannot be written: {error.strerror}"))
+        else:
+            tell(click.ClickException(f"{error.filename}: cannot be used: {error.strerror}"))
     sys.exit(status)
 
 
@@ -57,7 +61,7 @@ def _run(arguments: Sequence[str] | None) -> int:
     """Run the command line and return its exit status.
 
     Raises:
-        OSError: standard output cannot be written; every other file's fault is told where it is met.
+        OSError: standard output cannot be written, or a file failed where nobody foresaw it.
     """
     from filmfit.errors import Faults, FilmfitError
 

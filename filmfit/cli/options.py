@@ -3,10 +3,8 @@
 Knows where the records are by default, how a fault is told and how JSON and files leave; does not know any command.
 """
 
-import json
 import os
 import re
-import secrets
 import sys
 from collections.abc import Callable
 from pathlib import Path
@@ -56,6 +54,8 @@ def tell(fault: Exception) -> None:
 
 def write_json(content: Any, to: str) -> None:
     """Write JSON (UTF-8, as RFC 8259 asks) to standard output ('-') or, whole or not at all, to a file."""
+    import json
+
     text = json.dumps(content, indent=2, ensure_ascii=False, allow_nan=False) + "\n"
     whole = text.encode("utf-8", "replace")  # a file's name may hold bytes that are no text
     if to == "-":
@@ -88,7 +88,7 @@ def write_whole(path: Path, content: bytes) -> None:
     """
     from filmfit.errors import UsageError
 
-    beside = path.with_name(f".{path.name}.{secrets.token_hex(4)}")
+    beside = path.with_name(f".{path.name}.{os.urandom(4).hex()}")
     try:
         try:
             beside.write_bytes(content)

@@ -108,6 +108,19 @@ def test_a_full_disk_is_told(tmp_path, arguments):
     assert "Exception" not in told.stderr
 
 
+def test_a_file_that_fails_unforeseen_is_told_by_its_name(monkeypatch, capsys):
+    from filmfit.cli import main
+
+    def fail(**_):
+        raise PermissionError(13, "Permission denied", "a.csv")
+
+    monkeypatch.setattr(main.cli, "main", fail)
+    with pytest.raises(SystemExit) as left:
+        main.main(["materials", "list"])
+    assert left.value.code == 2
+    assert capsys.readouterr().err == "a.csv: cannot be used: Permission denied\n"
+
+
 @pytest.mark.skipif(os.name == "nt", reason="pipes close in another way there")
 def test_a_reader_that_has_gone_ends_the_program_silently(tmp_path):
     reading, writing = os.pipe()

@@ -80,6 +80,17 @@ def test_an_unwritable_record_is_refused_before_anything_is_done(example, tmp_pa
     assert sorted(path.name for path in tmp_path.iterdir()) == ["first-run"]
 
 
+def test_the_picture_lies_beside_the_records_and_stages_are_told_on_standard_error(example, tmp_path):
+    (tmp_path / "lab").mkdir()
+    told = run("fit", example / "run.toml", "--records", "sqlite:///lab/a.sqlite", "--quiet", "--verbose", cwd=tmp_path)
+    assert told.returncode == 0, told.stderr
+    assert len(told.stdout.splitlines()) == 1
+    assert (tmp_path / "lab" / "C1-0231-fit.svg").is_file()
+    for stage in ("read and fitted in", "filed in", "drawn in"):
+        assert f"filmfit.cli: {example}/run.toml: {stage}" in told.stderr
+    assert "alembic" not in told.stderr
+
+
 def test_new_writes_a_run_file_once(tmp_path):
     told = run("new", "K2-9.toml", cwd=tmp_path)
     assert told.returncode == 0
