@@ -19,9 +19,23 @@ from filmfit.cli.runs import runs
 WRONG_USE = 2
 INTERRUPTED = 130  # 128 + SIGINT, as shells have it
 READER_GONE = 141  # 128 + SIGPIPE
+LATER = ("read", "thickness", "substrate", "rate", "next", "trend", "tradeoff")
+
+
+class _Commands(click.Group):
+    """The group, which tells a command that is not built yet from a mistyped one."""
+
+    def resolve_command(
+        self, ctx: click.Context, args: list[str]
+    ) -> tuple[str | None, click.Command | None, list[str]]:
+        """Find the command that the first word names."""
+        if args and args[0] in LATER:
+            raise click.UsageError(f"'{args[0]}' is not supported yet", ctx)
+        return super().resolve_command(ctx, args)
 
 
 @click.group(
+    cls=_Commands,
     context_settings={"help_option_names": ["-h", "--help"]},
     epilog="Example: filmfit fit examples/first-run/run.toml",
 )

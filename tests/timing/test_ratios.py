@@ -21,7 +21,7 @@ def best(call, repeats):
 
 def test_help_against_a_bare_interpreter():
     ratios = []
-    for _ in range(5):
+    for _ in range(8):
         bare = best(lambda: subprocess.run([sys.executable, "-c", "pass"], check=True), 3)
         help_ = best(
             lambda: subprocess.run(
