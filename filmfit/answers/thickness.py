@@ -8,8 +8,8 @@ from dataclasses import dataclass
 import numpy as np
 
 from filmfit.dispersion.compose import index_from_epsilon
+from filmfit.fit.depth import LayerModel
 from filmfit.fit.interval import Posterior
-from filmfit.fit.model import LayerModel
 from filmfit.rates.rate import rate_nm_min
 from filmfit.result import Quantity
 from filmfit.stack import ComplexArray, FloatArray

@@ -12,8 +12,9 @@ import numpy as np
 
 from filmfit.dispersion.compose import Dispersion
 from filmfit.errors import Faults, FilmfitError, MaterialError, RunFileError, nearest
+from filmfit.fit.depth import LayerModel
 from filmfit.fit.inputs import RunInput, scan_of
-from filmfit.fit.model import InstrumentModel, LayerModel, PlateModel, RunModel
+from filmfit.fit.model import InstrumentModel, PlateModel, RunModel
 from filmfit.fit.parameters import (
     STARTING_MODELS,
     free_starts,

@@ -10,7 +10,8 @@ import numpy as np
 
 from filmfit.dispersion.compose import Dispersion
 from filmfit.dispersion.correction import Correction, hat_epsilon
-from filmfit.fit.model import LayerModel, RunModel
+from filmfit.fit.depth import LayerModel
+from filmfit.fit.model import RunModel
 from filmfit.fit.problem import Parameter, Problem
 from filmfit.fit.solve import Solution
 from filmfit.stack import ComplexArray, FloatArray

@@ -4,49 +4,17 @@ Knows which parameter goes where in layers, plate and instrument; does not know 
 Parameter values have shape (P,) or, for a batch of trials, (P, B); predictions (..., N) over all points of a run.
 """
 
-from dataclasses import dataclass, field, replace
-from typing import Protocol
+from dataclasses import dataclass, replace
 
 import numpy as np
-from numpy.typing import NDArray
 
+from filmfit.fit.depth import LayerModel, Row, rows
 from filmfit.fit.scan import Scan
-from filmfit.materials import Material
 from filmfit.measurement import Errors, observe
 from filmfit.stack import ComplexArray, FloatArray, Optics
-from filmfit.units import HC_EV_NM
 
-IndexArray = NDArray[np.intp]
 SMALL_ANGLE_DEG = 15.0
 HAZE_AT_NM = 550.0
-
-
-class Dispersive(Protocol):
-    """A dielectric function with parameters: a sum of laws, with or without a correction."""
-
-    @property
-    def names(self) -> tuple[str, ...]:
-        """Full names of the parameters, in order."""
-
-    def evaluate(self, energy_eV: FloatArray, values: FloatArray) -> tuple[ComplexArray, ComplexArray]:
-        """Return epsilon (..., E) and its derivatives (P, ..., E)."""
-
-
-@dataclass(frozen=True)
-class LayerModel:
-    """A layer: its laws with the indices of their parameters, or a fixed material; and its thickness."""
-
-    name: str
-    thickness: int
-    dispersion: Dispersive | None = None
-    laws: IndexArray = field(default_factory=lambda: np.empty(0, np.intp))
-    material: Material | None = None
-
-    @property
-    def law_names(self) -> tuple[str, ...]:
-        """Names of the layer's laws, each once; empty where it is held fixed."""
-        names = self.dispersion.names if self.dispersion is not None else ()
-        return tuple(dict.fromkeys(name.partition(".")[0] for name in names))
 
 
 @dataclass(frozen=True)
@@ -164,14 +132,12 @@ class RunModel:
             _common(values[tool.wedge]) if scan.coated else 0.0,
         )
         seen = observe(grid.optics, grid.thickness_nm, self.plate.thickness_mm, scan.beam, errors, not self.plate_held)
-        layers = self.layers if scan.coated else ()
-        for number, layer in enumerate(layers):
-            jacobian[layer.thickness] += seen.d_thickness[number]
-            if layer.laws.size:
+        for number, row in enumerate(grid.rows):
+            jacobian[row.thickness] += row.share * seen.d_thickness[number]
+            if row.indices.size:
                 # a product per real part: Re(a b) without the unused imaginary half
-                gradient = grid.gradients[number]
                 slope = seen.d_epsilon[number]
-                jacobian[layer.laws] += gradient.real * slope.real - gradient.imag * slope.imag
+                jacobian[row.indices] += row.gradient.real * slope.real - row.gradient.imag * slope.imag
         if not self.plate_held:
             for index, derivative in grid.plate.items():
                 jacobian[index] += (seen.d_substrate * derivative).real
@@ -189,7 +155,7 @@ class OnGrid:
 
     optics: Optics
     thickness_nm: FloatArray
-    gradients: tuple[ComplexArray, ...]
+    rows: tuple[Row, ...]
     plate: dict[int, ComplexArray]
 
 
@@ -197,23 +163,17 @@ def on_grid(run: RunModel, values: FloatArray, nominal_nm: FloatArray, coated: b
     """Evaluate a run's laws, materials and plate at the true wavelengths of a grid."""
     batch = values.shape[1:]
     true_nm = nominal_nm + _common(values[run.instrument.offset_nm])
-    layers = run.layers if coated else ()
-    epsilon = np.empty((len(layers), *batch, true_nm.size), complex)
-    gradients = []
-    for number, layer in enumerate(layers):
-        if layer.dispersion is None:
-            assert layer.material is not None
-            epsilon[number] = layer.material.epsilon(np.clip(true_nm, *layer.material.valid_nm))
-            gradients.append(np.empty((0, *batch, true_nm.size), complex))
-            continue
-        epsilon[number], gradient = layer.dispersion.evaluate(HC_EV_NM / true_nm, values[layer.laws][..., None])
-        gradients.append(gradient)
+    stack = tuple(row for layer in (run.layers if coated else ()) for row in rows(layer, values, true_nm))
+    epsilon = np.empty((len(stack), *batch, true_nm.size), complex)
+    thickness = np.empty((len(stack), *batch))
+    for number, row in enumerate(stack):
+        epsilon[number] = row.epsilon
+        thickness[number] = row.share * values[row.thickness]
     plate_nm = nominal_nm if run.plate.measured else true_nm
     substrate, plate = _substrate(run.plate, values, plate_nm)
     substrate_slope = np.zeros_like(substrate) if run.plate.measured else _slope(substrate, true_nm)
-    thickness = np.array([values[layer.thickness] for layer in layers]).reshape(len(layers), *batch)
     optics = Optics(true_nm, epsilon, _slope(epsilon, true_nm), substrate, substrate_slope)
-    return OnGrid(optics, thickness, tuple(gradients), plate)
+    return OnGrid(optics, thickness, stack, plate)
 
 
 def _common(values: FloatArray) -> float:

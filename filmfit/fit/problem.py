@@ -10,7 +10,8 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from filmfit.dispersion.compose import index_from_epsilon
-from filmfit.fit.model import LayerModel, Prediction, RunModel
+from filmfit.fit.depth import LayerModel
+from filmfit.fit.model import Prediction, RunModel
 from filmfit.stack import FloatArray
 from filmfit.units import HC_EV_NM
 

@@ -6,7 +6,8 @@ import numpy as np
 import pytest
 
 from filmfit.dispersion.compose import Dispersion
-from filmfit.fit.model import InstrumentModel, LayerModel, PlateModel, RunModel
+from filmfit.fit.depth import LayerModel
+from filmfit.fit.model import InstrumentModel, PlateModel, RunModel
 from filmfit.fit.problem import Parameter, Problem
 from filmfit.fit.scan import Scan
 from filmfit.stack import Beam
