@@ -85,8 +85,9 @@ def summary(outcome: Outcome, film: int, fits: list[Reading], seconds: float) ->
     layer = solution.problem.runs[0].layers[film]
     laws = dict.fromkeys(name.partition(".")[0] for name in layer.dispersion.names) if layer.dispersion else {}
     model = " + ".join(name for name in laws if name != "correction")
+    said = (model, *outcome.structures, f"causal correction of about {100 * outcome.freedom.size:g} %")
     return FitSummary(
-        model=f"{model} + causal correction of about {100 * outcome.freedom.size:g} %",
+        model=" + ".join(said),
         reduced_chi2=solution.reduced_chi2,
         rms_R=rms["R"],
         rms_T=rms["T"],

@@ -22,12 +22,14 @@ def carriers(found: Found, mass: Expectation | None) -> dict[str, Quantity | Non
     plasma, damping = found.parameter("drude.plasma_eV"), found.parameter("drude.damping_eV")
     if plasma is None or damping is None:
         return {}
-    posterior, depth = found.posterior, found.layer.thickness
+    posterior, volume_nm = found.posterior, found.layer.volume_nm
     quantities = {
         "plasma_energy_eV": posterior.positive(lambda v: float(v[plasma])),
         "resistivity_ohm_cm": posterior.positive(lambda v: float(formulas.resistivity_ohm_cm(v[plasma], v[damping]))),
         "sheet_resistance_ohm": posterior.positive(
-            lambda v: float(formulas.sheet_resistance_ohm(formulas.resistivity_ohm_cm(v[plasma], v[damping]), v[depth]))
+            lambda v: float(
+                formulas.sheet_resistance_ohm(formulas.resistivity_ohm_cm(v[plasma], v[damping]), volume_nm(v))
+            )
         ),
     }
     if mass is not None:

@@ -34,8 +34,8 @@ def main_results(file: RunFile, built: Built, posterior: Posterior, main: int, m
 
 def _top(posterior: Posterior) -> Quantity | None:
     """Return the distance from the plate to the outer surface in nm, all layers together."""
-    depths = [layer.thickness for layer in posterior.solution.problem.runs[0].layers]
-    return posterior.positive(lambda values: float(sum(values[at] for at in depths)))
+    layers = posterior.solution.problem.runs[0].layers
+    return posterior.positive(lambda values: float(sum(layer.top_nm(values) for layer in layers)))
 
 
 def effective_mass(file: RunFile, built: Built) -> Expectation | None:

@@ -46,9 +46,8 @@ class Found:
 
 
 def thickness(found: Found) -> Quantity | None:
-    """Return the layer's thickness in nm; None where the data do not determine it."""
-    index = found.layer.thickness
-    return found.posterior.positive(lambda values: float(values[index]))
+    """Return the layer's volume-equivalent thickness in nm; None where the data do not determine it."""
+    return found.posterior.positive(found.layer.volume_nm)
 
 
 def index_550(found: Found) -> Quantity | None:

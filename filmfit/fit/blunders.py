@@ -10,8 +10,8 @@ from typing import Literal
 
 import numpy as np
 
-from filmfit.fit.choose import RANKING, badness
 from filmfit.fit.discrepancy import corrected
+from filmfit.fit.freedom import DECISIVE_BIC, RANKING, badness
 from filmfit.fit.model import RunModel
 from filmfit.fit.problem import Problem
 from filmfit.fit.scan import Scan
@@ -24,7 +24,6 @@ POINTS = 90  # a scan's points
 SCREEN_EVALUATIONS = 25
 LOST = 30.0  # chi2 per point of the declared reading with the law alone: its end tells nothing of another reading's
 SCREEN_RATIO = 3.0  # a reading whose chi2 with the law alone is this many times the declared one is out
-DECISIVE_BIC = 10.0  # Kass and Raftery, J. Am. Stat. Assoc. 90, 773 (1995), p. 777
 
 
 @dataclass(frozen=True)
@@ -35,17 +34,17 @@ class Suspicion:
     delta_bic: float
 
 
-def suspicions(problem: Problem, solution: Solution, main: tuple[int, int]) -> tuple[Suspicion, ...]:
+def suspicions(plain: Solution, solution: Solution, main: tuple[int, int]) -> tuple[Suspicion, ...]:
     """Return the blunders under which the data of one run fit clearly better, the likeliest first.
 
     Args:
-        problem: the run as declared, without any correction of the film's law.
+        plain: the run as declared, without any correction of the film's law.
         solution: the chosen fit; its values of the law's parameters are where each reading begins.
         main: run and layer that is fitted.
 
     Reference: comparison by evidence, as in choose.py; tests/recovery/test_blunders.py.
     """
-    start = _coarse(problem.started(solution.values[: len(problem.parameters)]))
+    start = _coarse(plain.problem.started(solution.values[: len(plain.values)]))
     declared = solve(start, SCREEN_EVALUATIONS)
     declared_badness: float | None = None
     found = []

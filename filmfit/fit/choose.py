@@ -9,29 +9,33 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from filmfit.fit.discrepancy import Freedom, corrected
+from filmfit.fit.freedom import (
+    BAND_FREEDOMS,
+    DECISIVE_BIC,
+    FREEDOMS,
+    RANKING,
+    RANKING_BANDS,
+    badness,
+    banded,
+    falls_short,
+    freed,
+)
 from filmfit.fit.problem import Problem
 from filmfit.fit.solve import Solution, solve
 from filmfit.fit.start import SAME_NM, SAME_RATIO, search, searchable
-from filmfit.stack import FloatArray
+from filmfit.fit.structures import STRUCTURES, sliced
 
 log = logging.getLogger("filmfit.fit")
 
 GROUP_NM = 4.0  # closer points are averaged: a slit is as wide, and no film's fringe is as narrow
 RANKING_POINTS = 250  # a scan's points while rivals are compared
+STRUCTURE_POINTS = 120  # and while structures are tried
 REFINED = 4  # trials refined with the law alone
 CONTENDERS = 3  # of them, compared with the correction too
-# How free the law's correction may be while rivals are compared, and in the end; more only where less falls short.
-RANKING = Freedom(0.1)
-RANKING_BANDS = Freedom(1.0, bands=True)
-# No film obeys a law to better than a percent, so there is always a little.
-FREEDOMS = (Freedom(0.01), Freedom(0.03), Freedom(0.1), Freedom(0.3))
-BAND_FREEDOMS = (Freedom(0.3, bands=True), Freedom(1.0, bands=True), Freedom(3.0, bands=True))
+PROMISING = 0.8  # a structure whose chi2 with the law alone is a larger share of that without it is not tried
+STRUCTURED = 2  # of them, tried with every structure
 NEAR_END = 0.999  # a thickness beyond this share of the largest is the end of the search, not a minimum
-STRANGE = 0.1  # a law that must be corrected this much may be a rough film instead
-HAZE = (".haze_R", ".haze_T")
-HAZE_START = 0.01
-DECISIVE_BIC = 10.0
-FALLS_SHORT = 1.5  # chi2 per point
+STRANGE = 0.1  # a law that must be corrected this much may be a film of another structure instead
 LAW_FAILS = 250.0  # chi2 per point of the best minimum with the law alone
 HOPELESS = 30.0  # a trial whose chi2 is this many times the best one's is not refined
 
@@ -50,27 +54,19 @@ class Outcome:
 
     Args:
         solution: of the chosen model, on all points.
+        plain: of the same structure with the law alone, on fewer points.
         freedom: of the law's correction.
+        structures: what the film is beside smooth and alike at every depth, names of `structures.py`.
         thickness: index of the main thickness among the parameters.
         rivals: other minima, nearest first.
     """
 
     solution: Solution
+    plain: Solution
     freedom: Freedom
+    structures: tuple[str, ...]
     thickness: int
     rivals: tuple[Rival, ...]
-
-
-def badness(solution: Solution) -> float:
-    """Return -2 ln of the evidence for a fitted model, up to what all models of the same data share.
-
-    Chi2 (expectations included) plus the logarithm of the determinant of the information matrix: a parameter that
-    the data tie down costs what it narrows its expectation. Differences play the role of differences of BIC, which
-    is their limit for many points and vague expectations.
-
-    Reference: Kass and Raftery, J. Am. Stat. Assoc. 90, 773 (1995), Laplace's method.
-    """
-    return solution.chi2 - float(np.linalg.slogdet(solution.covariance)[1])
 
 
 def choose(problem: Problem, main: tuple[int, int], hint_nm: float | None = None) -> Outcome:
@@ -81,29 +77,89 @@ def choose(problem: Problem, main: tuple[int, int], hint_nm: float | None = None
         main: run and layer whose thickness is sought.
         hint_nm: a thickness to try as well.
     """
-    run, layer = main
-    thickness = problem.runs[run].layers[layer].thickness
+    thickness = problem.runs[main[0]].layers[main[1]].thickness
     few = problem.binned(GROUP_NM)
     ranking = problem.thinned(RANKING_POINTS)
     plains = [solve(ranking.started(one.values)) for one in _refined(ranking, thickness, hint_nm)[:CONTENDERS]]
     plains = _distinct(plains, thickness)
-    if plains[0].chi2 > LAW_FAILS * plains[0].problem.points:
+    lost = plains[0].chi2 > LAW_FAILS * plains[0].problem.points
+    ranked = _ranked(plains, main) if len(plains) > 1 and not lost else ()
+    plain = solve(few.started(ranked[0].plain.values if ranked else plains[0].values))
+    fitted = (solve(corrected(plain, *main, RANKING)), RANKING) if lost else freed(plain, main)
+    outcome = Outcome(fitted[0], plain, fitted[1], (), thickness, _rivals([one.flexible for one in ranked], thickness))
+    if outcome.freedom.size >= STRANGE or falls_short(outcome.solution):
+        outcome = _structured(outcome, plains, main)
+    if falls_short(outcome.solution) and not lost:
+        outcome = _with_bands(outcome, main)
+    if lost and outcome.solution.chi2 > LAW_FAILS * outcome.solution.problem.points:
         log.info("no thickness fits with the law alone: absorption bands are allowed from the start")
         outcome = _choose_with_bands(few, main, thickness, _ranked_with_bands(ranking, main, hint_nm))
-    else:
-        ranked = _ranked(plains, main) if len(plains) > 1 else ()
-        plain = solve(few.started(ranked[0].plain.values if ranked else plains[0].values))
-        solution, freedom = _with_scatter(plain, main, *_with_correction(plain, main))
-        outcome = Outcome(solution, freedom, thickness, _rivals([one.flexible for one in ranked], thickness))
     return replace(outcome, solution=_on_all_points(outcome.solution, problem))
+
+
+def _with_bands(outcome: Outcome, main: tuple[int, int]) -> Outcome:
+    """Return the outcome with narrow absorption bands, where the evidence is for them."""
+    solution, freedom = banded(outcome.plain, main)
+    if badness(solution) < badness(outcome.solution):
+        return replace(outcome, solution=solution, freedom=freedom)
+    return outcome
+
+
+def _structured(outcome: Outcome, plains: list[Solution], main: tuple[int, int]) -> Outcome:
+    """Return the outcome with the structures that the data ask for decisively, each tried on the last one's fit."""
+    starts = plains[:STRUCTURED]
+    for _ in STRUCTURES:
+        found = _best_structure(outcome, starts, main)
+        if found is None:
+            break
+        name, opened = found
+        plain = solve(_on_points_of(outcome.plain.problem, opened))
+        solution, freedom = freed(plain, main, FREEDOMS[1])
+        gained = badness(outcome.solution) - badness(solution)
+        log.info("%s: gains %.0f in evidence", name, gained)
+        if gained < DECISIVE_BIC:
+            break
+        structures = (*outcome.structures, name)
+        outcome = replace(outcome, solution=solution, plain=plain, freedom=freedom, structures=structures)
+        starts = [opened]
+        if freedom.size < STRANGE and not falls_short(solution):
+            break
+    return outcome if not outcome.structures else replace(outcome, solution=_sliced(outcome.solution))
+
+
+def _sliced(solution: Solution) -> Solution:
+    """Return the solution with graded layers cut as finely as its spectra ask for."""
+    finer = sliced(solution.problem, solution.values)
+    return solution if finer is solution.problem else solve(finer)
+
+
+def _best_structure(outcome: Outcome, starts: list[Solution], main: tuple[int, int]) -> tuple[str, Solution] | None:
+    """Return the structure, not there yet, with which the law alone comes nearest to the data, and its fit."""
+    few = [start.problem.thinned(STRUCTURE_POINTS).started(start.values) for start in starts]
+    found = [
+        (name, solve(opened))
+        for name, opening in STRUCTURES.items()
+        if name not in outcome.structures
+        for start in few
+        for opened in opening(start, *main)
+    ]
+    best = min(found, key=lambda row: row[1].chi2, default=None)
+    if best is None or best[1].chi2 > PROMISING * min(solve(start).chi2 for start in few):
+        return None
+    return best
+
+
+def _on_points_of(measured: Problem, solution: Solution) -> Problem:
+    """Return a solution's problem, started at its values, on the points of another with the same scans."""
+    runs = tuple(
+        replace(run, scans=given.scans) for run, given in zip(solution.problem.runs, measured.runs, strict=True)
+    )
+    return replace(solution.problem, runs=runs)
 
 
 def _on_all_points(solution: Solution, measured: Problem) -> Solution:
     """Return a solution found on averaged points with the scans as they were measured."""
-    runs = tuple(
-        replace(run, scans=given.scans) for run, given in zip(solution.problem.runs, measured.runs, strict=True)
-    )
-    problem = replace(solution.problem, runs=runs)
+    problem = _on_points_of(measured, solution)
     residual, _ = problem.evaluate(solution.values[list(problem.free)])
     return replace(solution, problem=problem, chi2=float(residual @ residual))
 
@@ -125,7 +181,7 @@ def _choose_with_bands(problem: Problem, main: tuple[int, int], thickness: int, 
         values = solution.values
         found.append((badness(solution), solution, freedom))
     _, solution, freedom = min(found, key=lambda row: row[0])
-    return Outcome(solution, freedom, thickness, _rivals(ranked, thickness))
+    return Outcome(solution, anchor, freedom, (), thickness, _rivals(ranked, thickness))
 
 
 def _unfitted(problem: Problem) -> Solution:
@@ -175,63 +231,9 @@ def _distinct(solutions: list[Solution], thickness: int) -> list[Solution]:
 def _ranked(plains: list[Solution], main: tuple[int, int]) -> list[_Contender]:
     """Return the contenders by their evidence, each given its own correction."""
     contenders = [_Contender(plain, solve(corrected(plain, *main, RANKING))) for plain in plains]
-    if all(_falls_short(contender.flexible) for contender in contenders):
+    if all(falls_short(contender.flexible) for contender in contenders):
         contenders = [
             _Contender(one.plain, min(one.flexible, solve(corrected(one.plain, *main, RANKING_BANDS)), key=badness))
             for one in contenders
         ]
     return sorted(contenders, key=lambda contender: badness(contender.flexible))
-
-
-def _falls_short(solution: Solution) -> bool:
-    """Say whether a fit misses the data by more than their noise."""
-    return solution.chi2 > FALLS_SHORT * solution.problem.points
-
-
-def _with_correction(plain: Solution, main: tuple[int, int]) -> tuple[Solution, Freedom]:
-    """Return the solution of the best-supported correction, and how free that is."""
-    best = _best_of(plain, main, FREEDOMS, FREEDOMS.index(RANKING))
-    if _falls_short(best[1]):
-        best = min(
-            best, _best_of(plain, main, BAND_FREEDOMS, BAND_FREEDOMS.index(RANKING_BANDS)), key=lambda row: row[0]
-        )
-    _, solution, freedom = best
-    return solution, freedom
-
-
-def _with_scatter(
-    plain: Solution, main: tuple[int, int], solution: Solution, freedom: Freedom
-) -> tuple[Solution, Freedom]:
-    """Return the solution with light lost by scattering where that is decisively better than a strange law."""
-    if freedom.size < STRANGE:
-        return solution, freedom
-    problem = plain.problem
-    free = {p.name: {"vary": True, "start": HAZE_START} for p in problem.parameters if p.name.endswith(HAZE)}
-    hazy = solve(problem.changed(free))
-    gained_badness, gained, its_freedom = _best_of(hazy, main, FREEDOMS, FREEDOMS.index(RANKING))
-    log.info("with scatter: badness %.0f against %.0f", gained_badness, badness(solution))
-    if gained_badness < badness(solution) - DECISIVE_BIC:
-        return gained, its_freedom
-    return solution, freedom
-
-
-def _best_of(
-    plain: Solution, main: tuple[int, int], freedoms: tuple[Freedom, ...], first: int
-) -> tuple[float, Solution, Freedom]:
-    """Return the best-supported of neighbouring freedoms, climbing from the first: evidence has one peak in size."""
-    tried: dict[int, tuple[float, Solution, Freedom]] = {}
-
-    def at(number: int, start: FloatArray | None) -> tuple[float, Solution, Freedom]:
-        if number not in tried:
-            problem = corrected(plain, *main, freedoms[number])
-            solution = solve(problem if start is None else problem.started(start))
-            tried[number] = (badness(solution), solution, freedoms[number])
-        return tried[number]
-
-    here = first
-    best = at(here, None)
-    for step in (-1, 1):
-        while 0 <= here + step < len(freedoms) and at(here + step, best[1].values)[0] < best[0]:
-            here += step
-            best = tried[here]
-    return best

@@ -116,7 +116,7 @@ def _answer(
     main = built.main[0][1]
     results = main_results(file, built, posterior, main, mass)
     difference = tmm_difference(run, solution.values)
-    blunders = suspicions(built.problem, solution, built.film[0])
+    blunders = suspicions(outcome.plain, solution, built.film[0])
     reasons, answer = judge(file, built, outcome, blunders, fits, results, difference)
     alternatives = [Alternative(thickness_nm=r.thickness_nm, delta_bic=r.delta_bic) for r in outcome.rivals]
     if answer == "unusable":

