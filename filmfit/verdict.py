@@ -133,7 +133,7 @@ def fit_reasons(outcome: Outcome, fits: list[Reading]) -> list[Reason]:
     """Return what the fit's quality and its rivals say."""
     reasons = []
     worst = max(fits, key=lambda fit: fit.rms)
-    chi2_per_point = outcome.solution.chi2 / outcome.solution.problem.points
+    chi2_per_point = sum(fit.chi2 for fit in fits) / sum(fit.fitted.size for fit in fits)
     if worst.rms > POOR_RMS:
         reasons.append(reason("poor-fit", rms=worst.rms))
     elif chi2_per_point > STRUCTURE_GROWTH:

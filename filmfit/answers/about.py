@@ -82,13 +82,14 @@ def summary(outcome: Outcome, film: int, fits: list[Reading], seconds: float) ->
     for quantity in ("R", "T"):
         parts = [fit.rms**2 for fit in fits if fit.scan.coated and fit.scan.beam.quantity == quantity]
         rms[quantity] = float(np.sqrt(np.mean(parts))) if parts else None
+    chi2, points = sum(fit.chi2 for fit in fits), solution.problem.points
     layer = solution.problem.runs[0].layers[film]
     laws = dict.fromkeys(name.partition(".")[0] for name in layer.dispersion.names) if layer.dispersion else {}
     model = " + ".join(name for name in laws if name != "correction")
     said = (model, *outcome.structures, f"causal correction of about {100 * outcome.freedom.size:g} %")
     return FitSummary(
         model=" + ".join(said),
-        reduced_chi2=solution.reduced_chi2,
+        reduced_chi2=chi2 / max(1, points - len(solution.problem.free)),
         rms_R=rms["R"],
         rms_T=rms["T"],
         points=solution.problem.points,

@@ -9,6 +9,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from filmfit.fit.discrepancy import Freedom, corrected
+from filmfit.fit.doubt import carried, doubted
 from filmfit.fit.freedom import (
     BAND_FREEDOMS,
     DECISIVE_BIC,
@@ -53,7 +54,7 @@ class Outcome:
     """What a fit came to.
 
     Args:
-        solution: of the chosen model, on all points.
+        solution: of the chosen model, on all points, their sigma grown where the model cannot follow.
         plain: of the same structure with the law alone, on fewer points.
         freedom: of the law's correction.
         structures: what the film is beside smooth and alike at every depth, names of `structures.py`.
@@ -94,7 +95,7 @@ def choose(problem: Problem, main: tuple[int, int], hint_nm: float | None = None
     if lost and outcome.solution.chi2 > LAW_FAILS * outcome.solution.problem.points:
         log.info("no thickness fits with the law alone: absorption bands are allowed from the start")
         outcome = _choose_with_bands(few, main, thickness, _ranked_with_bands(ranking, main, hint_nm))
-    return replace(outcome, solution=_on_all_points(outcome.solution, problem))
+    return replace(outcome, solution=_on_all_points(doubted(outcome.solution), few, problem))
 
 
 def _with_bands(outcome: Outcome, main: tuple[int, int]) -> Outcome:
@@ -157,9 +158,13 @@ def _on_points_of(measured: Problem, solution: Solution) -> Problem:
     return replace(solution.problem, runs=runs)
 
 
-def _on_all_points(solution: Solution, measured: Problem) -> Solution:
-    """Return a solution found on averaged points with the scans as they were measured."""
-    problem = _on_points_of(measured, solution)
+def _on_all_points(solution: Solution, few: Problem, measured: Problem) -> Solution:
+    """Return a solution found on averaged points with the scans as they were measured, doubts carried over."""
+    runs = tuple(
+        replace(run, scans=tuple(map(carried, run.scans, averaged.scans, given.scans)))
+        for run, averaged, given in zip(solution.problem.runs, few.runs, measured.runs, strict=True)
+    )
+    problem = replace(solution.problem, runs=runs)
     residual, _ = problem.evaluate(solution.values[list(problem.free)])
     return replace(solution, problem=problem, chi2=float(residual @ residual))
 

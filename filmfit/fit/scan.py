@@ -77,6 +77,11 @@ class Reading:
         """Root mean square of measured minus fitted, fraction."""
         return float(np.sqrt(np.mean((self.scan.values - self.fitted) ** 2)))
 
+    @property
+    def chi2(self) -> float:
+        """Sum of squares of measured minus fitted in units of the noise."""
+        return float(np.sum(((self.scan.values - self.fitted) / self.scan.sigma) ** 2))
+
 
 def noise_sigma(values: FloatArray) -> float:
     """Return the noise of one point of a smooth curve from its fourth differences.

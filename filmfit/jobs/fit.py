@@ -108,7 +108,7 @@ def _answer(
     run = solution.problem.runs[0]
     (seen,) = solution.problem.predict(solution.values)
     fits, start = [], 0
-    for scan in run.scans:
+    for scan in built.problem.runs[0].scans:
         fits.append(Reading(scan, seen.values[start : start + scan.values.size]))
         start += scan.values.size
     posterior = Posterior.of(solution)

@@ -44,9 +44,10 @@ def make_case(folder, seed):
     kind, row = KINDS[seed % len(KINDS)], seed // len(KINDS)
     name, depth, layers, (low, high), film = _film(rng, kind, row, seed)
     plate_kind = "silica" if rng.random() < 0.45 and kind != "wrong-glass" else "soda-lime"
-    plate = glass(rng, "strange" if kind == "wrong-glass" else plate_kind)
-    plate_mm = float(rng.choice([0.7, 1.1, 2.0, 3.0]))
     bare = kind != "wrong-glass" and rng.random() < 0.7
+    measured = {"silica": "silica", "soda-lime": "any" if bare else "soda-lime"}
+    plate = glass(rng, "strange" if kind == "wrong-glass" else measured[plate_kind], high)
+    plate_mm = float(rng.choice([0.7, 1.1, 2.0, 3.0]))
     bench = Bench.drawn(rng, rng.uniform(0.01, 0.04) if kind == "haze" else 0.0)
     nm = np.arange(max(low, 330.0) if plate_kind == "soda-lime" else low, high, 5.0 if high > 1200 else 2.5)
     blunder = BLUNDERS[(row * 2 + (seed % len(KINDS) > 20)) % 4] if kind == "blunder" else ""

