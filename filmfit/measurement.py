@@ -4,7 +4,7 @@ Knows the instrument's errors and their derivatives; does not know laws, priors 
 """
 
 from dataclasses import dataclass
-from typing import Any, NamedTuple
+from typing import NamedTuple
 
 import numpy as np
 
@@ -68,33 +68,29 @@ def observe(
     shift_nm = errors.slit_nm * TRIANGLE_SIGMA_PER_FWHM
     spread = errors.wedge * UNIFORM_SIGMA_PER_HALF_WIDTH
     has_fringes = optics.epsilon.shape[0] > 0
-    slit_signs = (-1.0, 1.0) if has_fringes and shift_nm > 0 else (0.0,)
-    wedge_signs = (-1.0, 1.0) if has_fringes and spread > 0 else (0.0,)
-    nodes = []
-    for slit_sign in slit_signs:
-        at = optics.shifted(slit_sign * shift_nm) if slit_sign else optics
-        for wedge_sign in wedge_signs:
-            stretch = 1.0 + wedge_sign * spread
-            seen = ideal(at, thickness_nm * stretch, substrate_mm, beam, plate_slopes)
-            by_wedge = wedge_sign * np.einsum("l...w,l...->...w", seen.d_thickness, thickness_nm)
-            nodes.append((seen, stretch, slit_sign, by_wedge))
-    k = errors.scale / len(nodes)
-    value = _total([seen.value for seen, *_ in nodes])
+    slit = _signs(has_fringes and shift_nm > 0)
+    wedge = _signs(has_fringes and spread > 0)
+    slit_sign, wedge_sign = np.repeat(slit, wedge.size), np.tile(wedge, slit.size)
+    # all nodes in one pass through the layers, as a leading batch axis
+    batch = (1,) * (thickness_nm.ndim - 1)
+    stretch = (1.0 + wedge_sign * spread).reshape(-1, *batch)
+    nodes = optics.spread((slit_sign * shift_nm).reshape(-1, *batch, 1))
+    seen = ideal(nodes, thickness_nm[:, None] * stretch, substrate_mm, beam, plate_slopes)
+    by_wedge = np.einsum("ln...w,l...->n...w", seen.d_thickness, thickness_nm)
+    k = errors.scale / slit_sign.size
+    value = seen.value.sum(axis=0)
     return Observed(
         value=k * value,
-        d_epsilon=k * _total([seen.d_epsilon for seen, *_ in nodes]),
-        d_thickness=k * _total([seen.d_thickness * stretch for seen, stretch, *_ in nodes]),
-        d_substrate=k * _total([seen.d_substrate for seen, *_ in nodes]),
-        d_wavelength=k * _total([seen.d_wavelength for seen, *_ in nodes]),
-        d_scale=value / len(nodes),
-        d_slit=(k * TRIANGLE_SIGMA_PER_FWHM) * _total([sign * seen.d_wavelength for seen, _, sign, _ in nodes]),
-        d_wedge=(k * UNIFORM_SIGMA_PER_HALF_WIDTH) * _total([by_wedge for *_, by_wedge in nodes]),
+        d_epsilon=k * seen.d_epsilon.sum(axis=1),
+        d_thickness=k * (seen.d_thickness * stretch[..., None]).sum(axis=1),
+        d_substrate=k * seen.d_substrate.sum(axis=0),
+        d_wavelength=k * seen.d_wavelength.sum(axis=0),
+        d_scale=value / slit_sign.size,
+        d_slit=(k * TRIANGLE_SIGMA_PER_FWHM) * np.tensordot(slit_sign, seen.d_wavelength, 1),
+        d_wedge=(k * UNIFORM_SIGMA_PER_HALF_WIDTH) * np.tensordot(wedge_sign, by_wedge, 1),
     )
 
 
-def _total(parts: list[Any]) -> Any:
-    """Return the sum of arrays of one shape, without a copy where there is one only."""
-    total = parts[0]
-    for part in parts[1:]:
-        total = total + part
-    return total
+def _signs(spread: bool) -> FloatArray:
+    """Return the places of the quadrature's nodes in standard deviations."""
+    return np.array([-1.0, 1.0]) if spread else np.zeros(1)

@@ -32,7 +32,7 @@ class Optics:
     """Dielectric functions on one wavelength grid, with their slopes in wavelength.
 
     Args:
-        wavelength_nm: (W,).
+        wavelength_nm: (W,), or (N, ..., W) where an instrument averages over nodes.
         epsilon: layers from the substrate up, (L, ..., W).
         epsilon_slope: d epsilon / d wavelength in 1/nm, (L, ..., W).
         substrate: dielectric function of the plate, broadcastable to (..., W).
@@ -45,12 +45,12 @@ class Optics:
     substrate: ComplexArray
     substrate_slope: ComplexArray
 
-    def shifted(self, by_nm: float) -> "Optics":
-        """Return the functions at wavelengths `by_nm` longer, to first order in the shift."""
+    def spread(self, by_nm: FloatArray) -> "Optics":
+        """Return the functions at wavelengths longer by each of (N, ..., 1), to first order, N as leading axis."""
         return Optics(
             self.wavelength_nm + by_nm,
-            self.epsilon + by_nm * self.epsilon_slope,
-            self.epsilon_slope,
+            self.epsilon[:, None] + by_nm * self.epsilon_slope[:, None],
+            self.epsilon_slope[:, None],
             self.substrate + by_nm * self.substrate_slope,
             self.substrate_slope,
         )

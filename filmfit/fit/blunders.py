@@ -15,13 +15,11 @@ from filmfit.fit.freedom import DECISIVE_BIC, RANKING, badness
 from filmfit.fit.model import RunModel
 from filmfit.fit.problem import Problem
 from filmfit.fit.scan import Scan
-from filmfit.fit.solve import Solution, solve
-from filmfit.fit.start import FINE_ERRORS, search
+from filmfit.fit.solve import Solution, roughly
+from filmfit.fit.start import BLUR, search
 from filmfit.stack import FloatArray
 
-BLUR = (".slit_nm", ".wedge", ".haze_R", ".haze_T")
 POINTS = 90  # a scan's points
-SCREEN_EVALUATIONS = 25
 LOST = 30.0  # chi2 per point of the declared reading with the law alone: its end tells nothing of another reading's
 SCREEN_RATIO = 3.0  # a reading whose chi2 with the law alone is this many times the declared one is out
 
@@ -45,7 +43,7 @@ def suspicions(plain: Solution, solution: Solution, main: tuple[int, int]) -> tu
     Reference: comparison by evidence, as in choose.py; tests/recovery/test_blunders.py.
     """
     start = _coarse(plain.problem.started(solution.values[: len(plain.values)]))
-    declared = solve(start, SCREEN_EVALUATIONS)
+    declared = roughly(start)
     declared_badness: float | None = None
     found = []
     for code, change in HYPOTHESES.items():
@@ -67,19 +65,21 @@ def suspicions(plain: Solution, solution: Solution, main: tuple[int, int]) -> tu
 
 def _read(problem: Problem, main: tuple[int, int], lost: bool) -> Solution:
     """Return a reading of the data, from where the declared one ended or, where that was lost, from a new search."""
-    near = solve(problem, SCREEN_EVALUATIONS)
+    near = roughly(problem)
     if not lost:
         return near
     found = search(problem, problem.runs[main[0]].layers[main[1]].thickness)
-    return min(near, solve(problem.started(found.values[:, 0]), SCREEN_EVALUATIONS), key=lambda one: one.chi2)
+    return min(near, roughly(problem.started(found.values[:, 0])), key=lambda one: one.chi2)
 
 
 def _coarse(problem: Problem) -> Problem:
     """Return the problem on few points, without slit, wedge and scatter: they blur every reading alike."""
     changes: dict[str, dict[str, object]] = {}
     for p in problem.parameters:
-        if p.name.endswith(FINE_ERRORS):
-            changes[p.name] = {"vary": False, "start": 0.0} if p.name.endswith(BLUR) else {"vary": False}
+        if p.name.endswith(BLUR):
+            changes[p.name] = {"vary": False, "start": 0.0}
+        elif p.name.endswith(".offset_nm"):
+            changes[p.name] = {"vary": False}
     return problem.changed(changes).thinned(POINTS)
 
 
@@ -90,7 +90,7 @@ def _badness(plain: Solution, main: tuple[int, int]) -> tuple[float, float]:
 
     Reference: quasi-likelihood: Wedderburn, Biometrika 61, 439 (1974).
     """
-    flexible = solve(corrected(plain, *main, RANKING))
+    flexible = roughly(corrected(plain, *main, RANKING))
     return badness(flexible), max(1.0, flexible.chi2 / flexible.problem.points)
 
 

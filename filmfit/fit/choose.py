@@ -19,21 +19,23 @@ from filmfit.fit.freedom import (
     badness,
     banded,
     falls_short,
+    fitted,
     freed,
 )
 from filmfit.fit.problem import Problem
-from filmfit.fit.solve import Solution, solve
-from filmfit.fit.start import SAME_NM, SAME_RATIO, search, searchable
+from filmfit.fit.solve import Solution, roughly, solve
+from filmfit.fit.start import SAME_NM, SAME_RATIO, blurred, search, searchable
 from filmfit.fit.structures import STRUCTURES, sliced
 
 log = logging.getLogger("filmfit.fit")
 
 GROUP_NM = 4.0  # closer points are averaged: a slit is as wide, and no film's fringe is as narrow
 RANKING_POINTS = 250  # a scan's points while rivals are compared
-STRUCTURE_POINTS = 120  # and while structures are tried
+STRUCTURE_POINTS = 90  # and while structures are tried
 REFINED = 4  # trials refined with the law alone
 CONTENDERS = 3  # of them, compared with the correction too
 PROMISING = 0.8  # a structure whose chi2 with the law alone is a larger share of that without it is not tried
+NEARLY_AS_GOOD = 10.0  # chi2 over that of the best minimum, beyond which no structure is tried at another
 STRUCTURED = 2  # of them, tried with every structure
 NEAR_END = 0.999  # a thickness beyond this share of the largest is the end of the search, not a minimum
 STRANGE = 0.1  # a law that must be corrected this much may be a film of another structure instead
@@ -81,20 +83,21 @@ def choose(problem: Problem, main: tuple[int, int], hint_nm: float | None = None
     thickness = problem.runs[main[0]].layers[main[1]].thickness
     few = problem.binned(GROUP_NM)
     ranking = problem.thinned(RANKING_POINTS)
-    plains = [solve(ranking.started(one.values)) for one in _refined(ranking, thickness, hint_nm)[:CONTENDERS]]
+    plains = [solve(blurred(ranking, one.values)) for one in _refined(ranking, thickness, hint_nm)[:CONTENDERS]]
     plains = _distinct(plains, thickness)
     lost = plains[0].chi2 > LAW_FAILS * plains[0].problem.points
     ranked = _ranked(plains, main) if len(plains) > 1 and not lost else ()
     plain = solve(few.started(ranked[0].plain.values if ranked else plains[0].values))
-    fitted = (solve(corrected(plain, *main, RANKING)), RANKING) if lost else freed(plain, main)
-    outcome = Outcome(fitted[0], plain, fitted[1], (), thickness, _rivals([one.flexible for one in ranked], thickness))
+    solution, freedom = (fitted(plain, main, RANKING), RANKING) if lost else freed(plain, main)
+    outcome = Outcome(solution, plain, freedom, (), thickness, _rivals([one.flexible for one in ranked], thickness))
     if outcome.freedom.size >= STRANGE or falls_short(outcome.solution):
         outcome = _structured(outcome, plains, main)
     if falls_short(outcome.solution) and not lost:
         outcome = _with_bands(outcome, main)
-    if lost and outcome.solution.chi2 > LAW_FAILS * outcome.solution.problem.points:
+    if lost and falls_short(outcome.solution):
         log.info("no thickness fits with the law alone: absorption bands are allowed from the start")
-        outcome = _choose_with_bands(few, main, thickness, _ranked_with_bands(ranking, main, hint_nm))
+        with_bands = _choose_with_bands(few, main, thickness, _ranked_with_bands(ranking, main, hint_nm))
+        outcome = min(with_bands, outcome, key=lambda one: badness(one.solution))
     return replace(outcome, solution=_on_all_points(doubted(outcome.solution), few, problem))
 
 
@@ -108,7 +111,7 @@ def _with_bands(outcome: Outcome, main: tuple[int, int]) -> Outcome:
 
 def _structured(outcome: Outcome, plains: list[Solution], main: tuple[int, int]) -> Outcome:
     """Return the outcome with the structures that the data ask for decisively, each tried on the last one's fit."""
-    starts = plains[:STRUCTURED]
+    starts = [plain for plain in plains[:STRUCTURED] if plain.chi2 < NEARLY_AS_GOOD * plains[0].chi2]
     for _ in STRUCTURES:
         found = _best_structure(outcome, starts, main)
         if found is None:
@@ -138,14 +141,14 @@ def _best_structure(outcome: Outcome, starts: list[Solution], main: tuple[int, i
     """Return the structure, not there yet, with which the law alone comes nearest to the data, and its fit."""
     few = [start.problem.thinned(STRUCTURE_POINTS).started(start.values) for start in starts]
     found = [
-        (name, solve(opened))
+        (name, roughly(opened))
         for name, opening in STRUCTURES.items()
         if name not in outcome.structures
         for start in few
         for opened in opening(start, *main)
     ]
     best = min(found, key=lambda row: row[1].chi2, default=None)
-    if best is None or best[1].chi2 > PROMISING * min(solve(start).chi2 for start in few):
+    if best is None or best[1].chi2 > PROMISING * min(roughly(start).chi2 for start in few):
         return None
     return best
 
@@ -174,18 +177,18 @@ def _ranked_with_bands(problem: Problem, main: tuple[int, int], hint_nm: float |
     thickness = problem.runs[main[0]].layers[main[1]].thickness
     flexible = corrected(_unfitted(problem), *main, RANKING_BANDS)
     found = _refined(flexible, thickness, hint_nm)[:CONTENDERS]
-    return sorted((solve(flexible.started(one.values)) for one in found), key=badness)
+    return sorted((solve(blurred(flexible, one.values)) for one in found), key=badness)
 
 
 def _choose_with_bands(problem: Problem, main: tuple[int, int], thickness: int, ranked: list[Solution]) -> Outcome:
     """Return the best-supported bands, begun at the best of the ranked minima."""
-    anchor, values = _unfitted(problem), ranked[0].values
+    anchor = _unfitted(problem)
+    near = (ranked[0], RANKING_BANDS)
     found = []
     for freedom in BAND_FREEDOMS:
-        solution = solve(corrected(anchor, *main, freedom).started(values))
-        values = solution.values
-        found.append((badness(solution), solution, freedom))
-    _, solution, freedom = min(found, key=lambda row: row[0])
+        near = (fitted(anchor, main, freedom, near), freedom)
+        found.append(near)
+    solution, freedom = min(found, key=lambda one: badness(one[0]))
     return Outcome(solution, anchor, freedom, (), thickness, _rivals(ranked, thickness))
 
 
@@ -219,7 +222,7 @@ def _refined(problem: Problem, thickness: int, hint_nm: float | None) -> list[So
     trials = search(problem, thickness, hint_nm)
     others = [n for n in range(1, trials.chi2.size) if trials.chi2[n] < HOPELESS * trials.chi2[0]]
     promising = [0, *others[: REFINED - 1]]
-    return _distinct([solve(quick.started(trials.values[:, n])) for n in promising], thickness)
+    return _distinct([roughly(quick.started(trials.values[:, n])) for n in promising], thickness)
 
 
 def _distinct(solutions: list[Solution], thickness: int) -> list[Solution]:
@@ -235,10 +238,10 @@ def _distinct(solutions: list[Solution], thickness: int) -> list[Solution]:
 
 def _ranked(plains: list[Solution], main: tuple[int, int]) -> list[_Contender]:
     """Return the contenders by their evidence, each given its own correction."""
-    contenders = [_Contender(plain, solve(corrected(plain, *main, RANKING))) for plain in plains]
+    contenders = [_Contender(plain, fitted(plain, main, RANKING)) for plain in plains]
     if all(falls_short(contender.flexible) for contender in contenders):
         contenders = [
-            _Contender(one.plain, min(one.flexible, solve(corrected(one.plain, *main, RANKING_BANDS)), key=badness))
+            _Contender(one.plain, min(one.flexible, fitted(one.plain, main, RANKING_BANDS), key=badness))
             for one in contenders
         ]
     return sorted(contenders, key=lambda contender: badness(contender.flexible))

@@ -20,6 +20,7 @@ from filmfit.units import HC_EV_NM
 CORRELATION_EV = 1.0  # over which the correction keeps its sign
 BAND_CORRELATION_EV = 0.3  # the same where narrow absorption bands must be allowed for
 FINE_EV = 0.08  # spacing of knots at the absorption edge
+BAND_FINE_EV = 0.06  # and everywhere where narrow bands must be allowed for
 EDGE_MARGIN_EV = 0.6  # how far below the gap the edge begins
 COARSE_RATIO = 0.18  # spacing of knots below the edge, as a share of the energy
 GROWTH = 1.4  # of the spacing beyond the data
@@ -105,7 +106,8 @@ def _correction(law: Dispersion, values: FloatArray, wavelength_nm: FloatArray, 
     gaps = [value for name, value in zip(law.names, values, strict=True) if name.endswith(".gap_eV")]
     shortest, longest = float(wavelength_nm.min()), float(wavelength_nm.max())
     edge_eV = 0.0 if freedom.bands else min(gaps, default=np.inf)
-    knots = _knots(HC_EV_NM / longest, HC_EV_NM / shortest, edge_eV)
+    fine_eV = BAND_FINE_EV if freedom.bands else FINE_EV
+    knots = _knots(HC_EV_NM / longest, HC_EV_NM / shortest, edge_eV, fine_eV)
     inner = knots[1:-1]
     epsilon2 = law.evaluate(inner, values[:, None])[0].imag
     correlation = np.exp(-np.abs(inner[:, None] - inner) / (BAND_CORRELATION_EV if freedom.bands else CORRELATION_EV))
@@ -115,13 +117,13 @@ def _correction(law: Dispersion, values: FloatArray, wavelength_nm: FloatArray, 
     return Correction(energy_eV, mixing.T @ hat_epsilon(energy_eV, knots))
 
 
-def _knots(lowest_eV: float, highest_eV: float, gap_eV: float) -> FloatArray:
+def _knots(lowest_eV: float, highest_eV: float, gap_eV: float, fine_eV: float) -> FloatArray:
     """Return ascending knots: coarse where the film is clear, fine at the edge, growing beyond the data."""
     knots = [0.75 * lowest_eV]
     while knots[-1] < highest_eV + 0.05:
         coarse = max(0.12, COARSE_RATIO * knots[-1])
-        knots.append(knots[-1] + (coarse if knots[-1] < gap_eV - EDGE_MARGIN_EV else FINE_EV))
-    step = FINE_EV
+        knots.append(knots[-1] + (coarse if knots[-1] < gap_eV - EDGE_MARGIN_EV else fine_eV))
+    step = fine_eV
     while knots[-1] < LAST_EV:
         step *= GROWTH
         knots.append(knots[-1] + step)

@@ -14,7 +14,7 @@ from filmfit.fit.solve import Solution, solve
 from filmfit.stack import FloatArray
 
 WINDOW = 11  # points over which residuals are averaged
-CLEAR_SIGMAS = 3.0  # of that average's own scatter
+CLEAR_SIGMAS = 5.0  # of that average's own scatter
 ROUNDS = 3
 
 

@@ -11,7 +11,7 @@ from filmfit.stack import FloatArray
 
 # No film obeys a law to better than a percent, so there is always a little.
 FREEDOMS = (Freedom(0.01), Freedom(0.03), Freedom(0.1), Freedom(0.3))
-BAND_FREEDOMS = (Freedom(0.3, bands=True), Freedom(1.0, bands=True), Freedom(3.0, bands=True))
+BAND_FREEDOMS = tuple(Freedom(size, bands=True) for size in (0.3, 1.0, 3.0, 10.0))
 # How free a correction is while rivals are compared.
 RANKING = FREEDOMS[2]
 RANKING_BANDS = BAND_FREEDOMS[1]
@@ -53,23 +53,37 @@ def banded(plain: Solution, main: tuple[int, int]) -> tuple[Solution, Freedom]:
     return _best_of(plain, main, BAND_FREEDOMS, BAND_FREEDOMS.index(RANKING_BANDS))[1:]
 
 
+def fitted(
+    plain: Solution, main: tuple[int, int], freedom: Freedom, near: tuple[Solution, Freedom] | None = None
+) -> Solution:
+    """Return the fit with a correction of one freedom, begun at that of another, near one where given.
+
+    Coefficients count in units of the expected size: the same correction has smaller ones where more is expected.
+    """
+    problem = corrected(plain, *main, freedom)
+    if near is None:
+        return solve(problem)
+    values: FloatArray = near[0].values.copy()
+    values[plain.values.size :] *= near[1].size / freedom.size
+    return solve(problem.started(values))
+
+
 def _best_of(
     plain: Solution, main: tuple[int, int], freedoms: tuple[Freedom, ...], first: int
 ) -> tuple[float, Solution, Freedom]:
     """Return the best-supported of neighbouring freedoms, climbing from the first: evidence has one peak in size."""
     tried: dict[int, tuple[float, Solution, Freedom]] = {}
 
-    def at(number: int, start: FloatArray | None) -> tuple[float, Solution, Freedom]:
+    def at(number: int, near: tuple[float, Solution, Freedom] | None) -> tuple[float, Solution, Freedom]:
         if number not in tried:
-            problem = corrected(plain, *main, freedoms[number])
-            solution = solve(problem if start is None else problem.started(start))
+            solution = fitted(plain, main, freedoms[number], near[1:] if near else None)
             tried[number] = (badness(solution), solution, freedoms[number])
         return tried[number]
 
     here = first
     best = at(here, None)
     for step in (-1, 1):
-        while 0 <= here + step < len(freedoms) and at(here + step, best[1].values)[0] < best[0]:
+        while 0 <= here + step < len(freedoms) and at(here + step, best)[0] < best[0]:
             here += step
             best = tried[here]
     return best

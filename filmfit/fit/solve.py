@@ -12,6 +12,8 @@ from filmfit.fit.descend import descend
 from filmfit.fit.problem import Problem
 from filmfit.stack import FloatArray
 
+MOST_EVALUATIONS = 200
+ROUGH_STEPS = 15  # where fits are only compared
 FIRST_STEPS = 12  # by normal equations, cheaper than the solver's, before it takes over
 CHI2_TOLERANCE = 1e-5  # of chi2: a hundredth of a unit for a thousand points
 STEEPEST = 1e12
@@ -78,7 +80,7 @@ class _Cache:
         return self
 
 
-def solve(problem: Problem, max_evaluations: int = 200) -> Solution:
+def solve(problem: Problem, max_evaluations: int = MOST_EVALUATIONS) -> Solution:
     """Return the least-squares solution nearest to the problem's starting values.
 
     Args:
@@ -124,6 +126,20 @@ def solve(problem: Problem, max_evaluations: int = 200) -> Solution:
         float(cache.residual @ cache.residual),
         cache.evaluations,
     )
+
+
+def roughly(problem: Problem, steps: int = ROUGH_STEPS) -> Solution:
+    """Return where so many steps downhill end: enough where fits are only compared.
+
+    Args:
+        problem: as for `solve`.
+        steps: at most.
+    """
+    begun = problem.start_values()[list(problem.free)]
+    end = descend(problem, begun[:, None], steps).values[:, 0]
+    residual, jacobian = problem.evaluate(end)
+    values = problem.full(end)
+    return Solution(problem.started(values), values, covariance(jacobian), float(residual @ residual), steps)
 
 
 def covariance(jacobian: FloatArray) -> FloatArray:

@@ -31,6 +31,7 @@ COARSE_POINTS = 60
 FIRST_STEPS = 4
 STAGES = ((120, 4, 5), (40, 3, 10))
 KEEP = 10
+BLUR = (".slit_nm", ".wedge", ".haze_R", ".haze_T")  # they blur every minimum alike
 SAME_NM = 4.0  # two ends this near, and within SAME_RATIO, are one minimum
 SAME_RATIO = 0.02
 
@@ -68,15 +69,19 @@ def search(problem: Problem, thickness: int, hint_nm: float | None = None) -> Tr
 
 def searchable(problem: Problem) -> Problem:
     """Return the problem with what does not move a minimum left out: plate, fine errors, the bare plate's scans."""
-    held = {
-        p.name: {"vary": False}
-        for p in problem.parameters
-        if p.name.endswith(FINE_ERRORS) or p.name.startswith("plate.")
-    }
+    held: dict[str, dict[str, object]] = {}
+    for p in problem.parameters:
+        if p.name.endswith(BLUR):
+            held[p.name] = {"vary": False, "start": 0.0}
+        elif p.name.endswith(".offset_nm") or p.name.startswith("plate."):
+            held[p.name] = {"vary": False}
     return replace(problem.changed(held), runs=tuple(run.coated_only() for run in problem.runs))
 
 
-FINE_ERRORS = (".offset_nm", ".slit_nm", ".wedge", ".haze_R", ".haze_T")
+def blurred(problem: Problem, values: FloatArray) -> Problem:
+    """Return the problem started at the values (P,) of a search, slit, wedge and scatter where they stood before it."""
+    kept = [p.start if p.name.endswith(BLUR) else value for p, value in zip(problem.parameters, values, strict=True)]
+    return problem.started(np.array(kept))
 
 
 def _starts(problem: Problem, thickness: int, hint_nm: float | None) -> FloatArray:

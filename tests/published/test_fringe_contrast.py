@@ -5,6 +5,8 @@ Film n = 1.95 of 1000 nm on a lossless plate of 1.51, 550 nm: full T 0.90837186;
 inhomogeneity as in Swanepoel, J. Phys. E 17, 896 (1984).
 """
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
@@ -16,6 +18,13 @@ OPTICS = Optics(
     GRID, np.full((1, 5), 1.95**2 + 0j), np.zeros((1, 5), complex), np.full(5, 1.51**2 + 0j), np.zeros(5, complex)
 )
 BEAM = Beam("T", 0.0, "mean", "film", "bare")
+
+
+def moved(by_nm):
+    """Return the optics at longer wavelengths, to first order."""
+    spread = OPTICS.spread(np.full((1, 1), by_nm))
+    return replace(spread, **{name: getattr(spread, name)[0] for name in ("wavelength_nm", "substrate")},
+                   epsilon=spread.epsilon[:, 0], epsilon_slope=OPTICS.epsilon_slope)  # fmt: skip
 
 
 @pytest.mark.parametrize(
@@ -54,5 +63,5 @@ def test_derivatives_of_the_instruments_errors(quantity):
     np.testing.assert_allclose(seen.d_scale, quotient("scale", 1e-4), atol=1e-9)
     np.testing.assert_allclose(seen.d_slit, quotient("slit_nm", 1e-3), atol=1e-9)
     np.testing.assert_allclose(seen.d_wedge, quotient("wedge", 1e-5), atol=1e-6)
-    longer, shorter = (observe(OPTICS.shifted(sign * 1e-3), depth, 1.0, beam, at).value for sign in (1, -1))
+    longer, shorter = (observe(moved(sign * 1e-3), depth, 1.0, beam, at).value for sign in (1, -1))
     np.testing.assert_allclose(seen.d_wavelength, (longer - shorter) / 2e-3, atol=1e-8)
