@@ -47,6 +47,8 @@ class Found:
 
 def thickness(found: Found) -> Quantity | None:
     """Return the layer's volume-equivalent thickness in nm; None where the data do not determine it."""
+    if found.layer.rough is None:
+        return found.posterior.thickness(found.layer.thickness)
     return found.posterior.positive(found.layer.volume_nm)
 
 

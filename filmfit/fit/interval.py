@@ -3,16 +3,21 @@
 Knows the solution's covariance and how much the residuals ask it to grow; does not know what a quantity means.
 """
 
-from collections.abc import Callable
-from dataclasses import dataclass
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass, replace
 
 import numpy as np
 
-from filmfit.fit.solve import Solution
+from filmfit.fit.problem import Problem
+from filmfit.fit.profile import Marginal, marginal_thickness
+from filmfit.fit.solve import Solution, solve
 from filmfit.result import COVERAGE_FACTOR, Quantity
 from filmfit.stack import FloatArray
 
 STEP_SIGMAS = 0.05  # of the difference quotient, in sigmas of each parameter
+CLEARLY_BETTER = 0.5  # in chi2
+PARABOLIC = 0.02  # a relative uncertainty up to which the likelihood of a thickness is a parabola
+LARGEST_RATIO = 50.0  # of the interval's ends; beyond it a parameter is not determined
 LARGEST_RELATIVE_SIGMA = 1.0  # beyond it a positive quantity is not determined
 
 
@@ -21,17 +26,45 @@ class Posterior:
     """Parameters (P,) with the covariance (F, F) of the free ones, grown to what the residuals show."""
 
     solution: Solution
-    growth: float
+    covariance: FloatArray
+    marginal: Marginal | None = None  # of the thickness, where no parabola does
 
     @classmethod
     def of(cls, solution: Solution) -> "Posterior":
-        """Return the solution with its covariance grown by the residuals' excess over their noise."""
-        return cls(solution, residual_growth(solution))
+        """Return the solution with its covariance grown by the residuals' excess over their noise.
 
-    @property
-    def covariance(self) -> FloatArray:
-        """Covariance of the free parameters (F, F)."""
-        return self.solution.covariance * self.growth
+        Each scan's share of the information counts by its own growth, expectations by theirs: the sandwich.
+
+        Reference: White, Econometrica 50, 1 (1982); tests/rooms/test_scan_and_interval.py.
+        """
+        residual, jacobian = solution.problem.evaluate(solution.values[list(solution.problem.free)])
+        spread = np.ones(residual.size)
+        for start, stop, growth in residual_growths(solution.problem, residual):
+            spread[start:stop] = growth
+        scores = (jacobian * spread) @ jacobian.T
+        return cls(solution, solution.covariance @ scores @ solution.covariance)
+
+    def growth(self, index: int) -> float:
+        """Return by how much the variance of a free parameter, by its index among all, has grown."""
+        place = self.solution.problem.free.index(index)
+        return max(1.0, float(self.covariance[place, place] / self.solution.covariance[place, place]))
+
+    def looked_along(self, index: int) -> "Posterior":
+        """Return the posterior with the marginal likelihood of a thickness where its parabola is too wide to be one.
+
+        Where the likelihood is highest elsewhere than the fit ended, the fit goes on from there.
+        """
+        if index not in self.solution.problem.free:
+            return self
+        place = self.solution.problem.free.index(index)
+        relative = float(np.sqrt(self.covariance[place, place])) / float(self.solution.values[index])
+        if relative < PARABOLIC:
+            return self
+        marginal = marginal_thickness(self.solution, index, relative, self.growth(index))
+        onward = solve(self.solution.problem.started(marginal.likeliest))
+        if onward.chi2 < self.solution.chi2 - CLEARLY_BETTER:
+            return replace(Posterior.of(onward), marginal=marginal)
+        return replace(self, marginal=marginal)
 
     def gradient(self, function: Callable[[FloatArray], float]) -> FloatArray:
         """Return the derivatives (F,) of a function of all parameters (P,) by central differences."""
@@ -77,6 +110,18 @@ class Posterior:
         row = self.solution.problem.free.index(index)
         return Quantity.normal(value, max(float(self.covariance[row, row]), 0.0) ** 0.5)
 
+    def thickness(self, index: int) -> Quantity | None:
+        """Return a thickness by its index among the parameters, its interval the marginal one where that was needed.
+
+        None where the data do not determine it.
+        """
+        if self.marginal is None or self.marginal.index != index:
+            return self.positive(lambda values: float(values[index]))
+        low, high = self.marginal.low, self.marginal.high
+        if high > LARGEST_RATIO * low:
+            return None
+        return Quantity.between(float(np.clip(self.solution.values[index], low, high)), low, high)
+
     def plain(self, function: Callable[[FloatArray], float]) -> Quantity:
         """Return a quantity of either sign, its interval symmetric."""
         slopes = self.gradient(function)
@@ -84,26 +129,22 @@ class Posterior:
         return Quantity.normal(float(function(self.solution.values)), max(variance, 0.0) ** 0.5)
 
 
-def residual_growth(solution: Solution) -> float:
-    """Return by how much the residuals ask the covariance to grow, at least 1.
+def residual_growths(problem: Problem, residual: FloatArray) -> Iterator[tuple[int, int, float]]:
+    """Yield for each scan where its rows begin and end, and by how much it asks variances to grow, at least 1.
 
-    Noise that is larger than assumed grows it by chi2 per point. Residuals that hold together over neighbouring
-    points carry less information than their number: the variance grows by the sum of their autocorrelation.
+    Noise that is larger than assumed counts by chi2 per point. Residuals that hold together over neighbouring points
+    carry less information than their number: the variance grows by the sum of their autocorrelation.
 
     Reference: effective number of observations: Bayley and Hammersley, J. R. Stat. Soc. Suppl. 8, 184 (1946);
         tests/rooms/test_scan_and_interval.py.
     """
-    residual, _ = solution.problem.evaluate(solution.values[list(solution.problem.free)])
-    start, chi2, growths = 0, 0.0, []
-    for run in solution.problem.runs:
+    start = 0
+    for run in problem.runs:
         for scan in run.scans:
-            part = residual[start : start + scan.values.size]
-            start += scan.values.size
-            chi2 += float(part @ part)
-            growths.append((autocorrelation_sum(part), part.size))
-    points = sum(size for _, size in growths)
-    memory = sum(growth * size for growth, size in growths) / points
-    return max(1.0, chi2 / points) * max(1.0, memory)
+            stop = start + scan.values.size
+            part = residual[start:stop]
+            yield start, stop, max(1.0, float(part @ part) / part.size) * max(1.0, autocorrelation_sum(part))
+            start = stop
 
 
 def autocorrelation_sum(residual: FloatArray) -> float:

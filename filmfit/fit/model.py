@@ -15,6 +15,8 @@ from filmfit.stack import ComplexArray, FloatArray, Optics
 
 SMALL_ANGLE_DEG = 15.0
 HAZE_AT_NM = 550.0
+TILT_AT_NM = 550.0  # where a plate's index has neither tilt; as the terms of Cauchy's law with and without resonance
+TILT_RED = 5.0  # the infrared tilt is in units of its change to about 1350 nm
 
 
 @dataclass(frozen=True)
@@ -30,6 +32,7 @@ class PlateModel:
     index: FloatArray
     absorbance: FloatArray  # natural logarithm, one pass at normal incidence
     index_shift: int
+    index_tilts: tuple[int, int]  # towards the ultraviolet and the infrared
     factor_nm: FloatArray  # knots between which the factors on the absorbance are interpolated
     absorbance_factors: tuple[int, ...]
     absorbance_shift: int
@@ -197,12 +200,16 @@ def _substrate(
     shares = plate.shares(wavelength_nm)
     factor = sum(values[at][..., None] * share for at, share in zip(plate.absorbance_factors, shares, strict=True))
     total = factor * absorbance + values[plate.absorbance_shift][..., None]
-    absorbs = total > 0
+    absorbs = total >= 0
     k_per_absorbance = wavelength_nm / (4 * np.pi * plate.thickness_mm * 1e6)
-    n = index + values[plate.index_shift][..., None] + 1j * k_per_absorbance * np.where(absorbs, total, 0.0)
+    tilts = (TILT_AT_NM / wavelength_nm) ** 2 - 1.0, ((wavelength_nm / TILT_AT_NM) ** 2 - 1.0) / TILT_RED
+    index = index + values[plate.index_shift][..., None]
+    index = index + sum(values[at][..., None] * tilt for at, tilt in zip(plate.index_tilts, tilts, strict=True))
+    n = index + 1j * k_per_absorbance * np.where(absorbs, total, 0.0)
     by_absorbance = 2j * n * k_per_absorbance * absorbs
     return n**2, {
         plate.index_shift: 2 * n,
+        **{at: 2 * n * tilt for at, tilt in zip(plate.index_tilts, tilts, strict=True)},
         **{
             at: by_absorbance * (absorbance * share) for at, share in zip(plate.absorbance_factors, shares, strict=True)
         },

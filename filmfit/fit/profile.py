@@ -1,90 +1,133 @@
-"""The interval of one parameter where a parabola does not do: what all the others can make good, at each of its values.
+"""The interval of a thickness where a parabola does not do: what all else can make good, at each value of it.
 
-Knows a solution and one of its positive parameters; does not know what the parameter means.
+Knows that a thin film's thickness trades against the strength of its dielectric function; does not know answers.
 """
 
-from collections.abc import Iterator
+from dataclasses import dataclass, replace
 
 import numpy as np
-from scipy.interpolate import CubicSpline
+from scipy.interpolate import PchipInterpolator
 
 from filmfit.fit.descend import descend
 from filmfit.fit.problem import Problem
-from filmfit.fit.solve import Solution, covariance
+from filmfit.fit.solve import Solution
 from filmfit.stack import FloatArray
 
-STEP_SIGMAS = 0.6  # between neighbouring values, in standard uncertainties of the parabola
-ENOUGH = 9.0  # rise of -2 ln p beyond which nothing counts: 3 sigma of a parabola
-MOST_STEPS = 14  # to either side
-DOWNHILL = 6
+GROUP_NM = 8.0  # closer points are averaged: spectra of thin films are smooth
+VALUES = 17
+SPAN_SIGMAS = 4.5  # to either side, of the parabola
+LEAST_SPAN, MOST_SPAN = 0.12, 1.2  # of the logarithm
+HELD_SIGMA = 1e-5  # a thickness is held by so tight an expectation, relative
+DOWNHILL = 30
+ROUNDS = 2
 FINE = 2001
 TAIL = 0.025
+# How a law's parameters follow a film of another thickness: thickness x (epsilon - 1) stays.
+LINEAR, ROOT, ABOUT_ONE = (".amplitude_eV", ".strength"), (".plasma_eV",), (".constant.epsilon",)
+COMMON = (".offset_nm", ".slit_nm", ".wedge")  # what a batch of trials shares
 
 
-def marginal_interval(solution: Solution, index: int, growth: float) -> tuple[float, float]:
-    """Return the ends of the central 95 % interval of a positive parameter, flat beforehand in its logarithm.
+@dataclass(frozen=True)
+class Marginal:
+    """The central 95 % interval of a thickness by its index, and all parameters (P,) of its likeliest value."""
 
-    At each of its values the others are fitted anew, and what room they leave counts with the misfit (Laplace).
+    index: int
+    low: float
+    high: float
+    likeliest: FloatArray
+
+
+def marginal_thickness(solution: Solution, index: int, relative_sigma: float, growth: float) -> Marginal:
+    """Return the marginal likelihood's interval of a thickness, flat beforehand in its logarithm.
+
+    At each value of the thickness all else is fitted anew, and the room that is left to it counts with the misfit
+    (Laplace's method).
 
     Args:
-        solution: a fit in which the parameter is free.
-        index: of the parameter among all.
+        solution: a fit in which the thickness is free.
+        index: of the thickness among all parameters.
+        relative_sigma: of the parabola, which sets the range that is looked at.
         growth: by which the residuals ask variances to grow; misfits shrink by it.
 
-    Reference: profile likelihood and Laplace's approximation of the marginal: Tierney and Kadane,
-        J. Am. Stat. Assoc. 81, 82 (1986); tests/rooms/test_profile.py.
+    Reference: Tierney and Kadane, J. Am. Stat. Assoc. 81, 82 (1986); tests/rooms/test_profile.py.
     """
-    centre = float(solution.values[index])
-    place = solution.problem.free.index(index)
-    relative = float(np.sqrt(solution.covariance[place, place] * growth)) / centre
-    step = STEP_SIGMAS * min(relative, 0.5)
-    held = solution.problem.changed({solution.problem.parameters[index].name: {"vary": False}})
-    found = {0.0: _level(held, solution.values, index, centre, growth)[0]}
-    for side in (-step, step):
-        for offset, level in _walk(solution, held, index, side, growth):
-            found[offset] = level
-            if level - min(found.values()) > ENOUGH:
-                break
-    offsets = np.array(sorted(found))
-    levels = np.array([found[offset] for offset in offsets])
-    if offsets.size < 4:
-        return centre * float(np.exp(-2 * relative)), centre * float(np.exp(2 * relative))
-    return _ends(centre, offsets, levels)
-
-
-def _walk(solution: Solution, held: Problem, index: int, side: float, growth: float) -> Iterator[tuple[float, float]]:
-    """Yield the parameter's relative offsets to one side and -2 ln p there, each begun at the last one's fit."""
+    span = float(np.clip(SPAN_SIGMAS * relative_sigma, LEAST_SPAN, MOST_SPAN))
     parameter = solution.problem.parameters[index]
-    place = solution.problem.free.index(index)
-    slope = solution.covariance[:, place] / solution.covariance[place, place]
-    others = [at for at in solution.problem.free if at != index]
-    slope = np.delete(slope, place)
-    values = solution.values.copy()
-    for number in range(1, MOST_STEPS + 1):
-        depth = float(solution.values[index]) * float(np.exp(number * side))
-        if not parameter.low < depth < parameter.high:
-            return
-        if number == 1:
-            values[others] += slope * (depth - values[index])
-        level, values = _level(held, values, index, depth, growth)
-        yield number * side, level
+    offsets = np.linspace(-span, span, VALUES)
+    depths = solution.values[index] * np.exp(offsets)
+    inside = (depths > parameter.low) & (depths < parameter.high)
+    offsets, depths = offsets[inside], depths[inside]
+    starts = np.stack([rescaled(solution.problem, solution.values, index, depth) for depth in depths], axis=1)
+    problem = _held(solution.problem, index, depths)
+    for _ in range(ROUNDS):
+        ended = descend(problem, starts[list(problem.free)], DOWNHILL)
+        starts[list(problem.free)] = ended.values
+        starts = _best_of_neighbours(problem, starts, index, depths)
+    ended = descend(problem, starts[list(problem.free)], DOWNHILL)
+    starts[list(problem.free)] = ended.values
+    _, jacobian = problem.evaluate(ended.values)
+    levels = ended.chi2 / growth + _log_information(jacobian)
+    low, high = _ends(offsets, levels)
+    centre = float(solution.values[index])
+    likeliest = starts[:, int(np.argmin(levels))]
+    return Marginal(index, centre * float(np.exp(low)), centre * float(np.exp(high)), likeliest)
 
 
-def _level(held: Problem, values: FloatArray, index: int, depth: float, growth: float) -> tuple[float, FloatArray]:
-    """Return -2 ln p, up to a constant, with the parameter held, and all values of that fit."""
-    start = values.copy()
-    start[index] = depth
-    problem = held.started(start)
-    ended = descend(problem, start[list(problem.free)][:, None], DOWNHILL)
-    _, jacobian = problem.evaluate(ended.values[:, 0])
-    room = float(np.linalg.slogdet(covariance(jacobian))[1])
-    return float(ended.chi2[0]) / growth - room, problem.full(ended.values[:, 0])
+def _best_of_neighbours(problem: Problem, trials: FloatArray, index: int, depths: FloatArray) -> FloatArray:
+    """Return trials (P, B), each replaced by a neighbour's, carried to its own thickness, where that fits better."""
+    sources = np.clip(np.arange(depths.size) + np.array([[0], [-1], [1]]), 0, depths.size - 1)
+    candidates = [
+        np.stack([rescaled(problem, trials[:, one], index, depth) for one, depth in zip(row, depths, strict=True)], 1)
+        for row in sources
+    ]
+    misfits = [np.sum(problem.evaluate(one[list(problem.free)])[0] ** 2, axis=-1) for one in candidates]
+    best = np.argmin(misfits, axis=0)
+    return np.stack(candidates)[best, :, np.arange(depths.size)].T
 
 
-def _ends(centre: float, offsets: FloatArray, levels: FloatArray) -> tuple[float, float]:
+def rescaled(problem: Problem, values: FloatArray, index: int, depth_nm: float) -> FloatArray:
+    """Return all parameters (P,) with one thickness changed and its layer's law made weaker or stronger in turn."""
+    ratio = float(values[index]) / depth_nm
+    stem = problem.parameters[index].name.rpartition(".")[0] + "."
+    changed = values.copy()
+    changed[index] = depth_nm
+    for at, parameter in enumerate(problem.parameters):
+        name = parameter.name
+        if not (parameter.vary and name.startswith(stem)):
+            continue
+        if name.endswith(LINEAR) or ".correction." in name:
+            changed[at] *= ratio
+        elif name.endswith(ROOT):
+            changed[at] *= ratio**0.5
+        elif name.endswith(ABOUT_ONE):
+            changed[at] = 1.0 + (changed[at] - 1.0) * ratio
+        changed[at] = np.clip(changed[at], parameter.low, parameter.high)
+    return changed
+
+
+def _held(problem: Problem, index: int, depths: FloatArray) -> Problem:
+    """Return the problem on averaged points with each trial of a batch held at its own thickness."""
+    parameters = []
+    for at, parameter in enumerate(problem.parameters):
+        if at == index:
+            parameter = replace(parameter, expected=depths, sigma=HELD_SIGMA * depths)  # type: ignore[arg-type]
+        elif parameter.name.endswith(COMMON):
+            parameter = replace(parameter, vary=False)
+        parameters.append(parameter)
+    return replace(problem, parameters=tuple(parameters)).binned(GROUP_NM)
+
+
+def _log_information(jacobian: FloatArray) -> FloatArray:
+    """Return ln det (J J^T) (B,) of derivatives (F, B, M)."""
+    by_trial = np.moveaxis(jacobian, 0, 1)
+    logarithm: FloatArray = np.linalg.slogdet(by_trial @ np.swapaxes(by_trial, 1, 2))[1]
+    return logarithm
+
+
+def _ends(offsets: FloatArray, levels: FloatArray) -> tuple[float, float]:
     """Return where the tails of exp(-level / 2) over the logarithm hold their share."""
     fine = np.linspace(offsets[0], offsets[-1], FINE)
-    weight = np.exp(-0.5 * (CubicSpline(offsets, levels)(fine) - levels.min()))
+    weight = np.exp(-0.5 * (PchipInterpolator(offsets, levels - levels.min())(fine)))
     cumulative = np.concatenate([[0.0], np.cumsum(0.5 * (weight[1:] + weight[:-1]))])
     low, high = np.interp([TAIL, 1.0 - TAIL], cumulative / cumulative[-1], fine)
-    return centre * float(np.exp(low)), centre * float(np.exp(high))
+    return float(low), float(high)

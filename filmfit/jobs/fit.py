@@ -4,7 +4,7 @@ Knows the order of the steps; each step stands in a room of its own.
 """
 
 import time
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
 
@@ -104,14 +104,15 @@ def _answer(
     file: RunFile, given: RunInput, built: Built, outcome: Outcome, started: float
 ) -> tuple[Result, tuple[Curve, ...]]:
     """Return the result and the curves of a chosen fit."""
-    solution = outcome.solution
+    posterior = Posterior.of(outcome.solution).looked_along(outcome.thickness)
+    solution = posterior.solution
+    outcome = replace(outcome, solution=solution)
     run = solution.problem.runs[0]
     (seen,) = solution.problem.predict(solution.values)
     fits, start = [], 0
     for scan in built.problem.runs[0].scans:
         fits.append(Reading(scan, seen.values[start : start + scan.values.size]))
         start += scan.values.size
-    posterior = Posterior.of(solution)
     mass = effective_mass(file, built)
     main = built.main[0][1]
     results = main_results(file, built, posterior, main, mass)

@@ -32,7 +32,7 @@ TABLES = {
     "aluminium-nitride": ("main", "AlN", "Beliaev1", 310.0, 1670.0),
     "silver-a": ("main", "Ag", "Jiang", 350.0, 1900.0),
     "silver-b": ("main", "Ag", "McPeak", 350.0, 1650.0),
-    "silver-c": ("main", "Ag", "Werner", 350.0, 2400.0),
+    "silver-c": ("main", "Ag", "Wu", 350.0, 990.0),
     "silver-d": ("main", "Ag", "Johnson", 350.0, 1900.0),
     "silver-e": ("main", "Ag", "Babar", 350.0, 2400.0),
     "silver-f": ("main", "Ag", "Ciesielski", 350.0, 2400.0),

@@ -41,6 +41,10 @@ def make_problem(depths=(230.0,), share=True, noise_seed=None):
         plate = PlateModel(
             1.1, WAVELENGTH, np.full(WAVELENGTH.size, 1.52), np.full(WAVELENGTH.size, 0.01),
             add(Parameter(f"plate.{run}.index_shift", 0.0, -0.1, 0.1, 0.0, 0.003)),
+            (
+                add(Parameter(f"plate.{run}.index_blue", 0.0, -0.1, 0.1, 0.0, 0.002)),
+                add(Parameter(f"plate.{run}.index_red", 0.0, -0.1, 0.1, 0.0, 0.002)),
+            ),
             np.array([500.0, 900.0]),
             (
                 add(Parameter(f"plate.{run}.absorbance_factor", 1.0, 0.0, 5.0, 1.0, 0.1)),
