@@ -5,9 +5,9 @@ Knows how to read and check a material; does not know films or fits. A file with
 A file holds `name`, `kind` (fixed: known constants; starting: where a fit of such a film begins), `description`,
 `valid_nm`, `reference`, `origin` (measured, handbook, memory); then `laws` with `[parameters]` by full name
 ({ value, low, high, sigma }; sigma where the value is expected), or `[[table]]` blocks (reference, wavelength_nm, n,
-k), the first of which is the material, over all of `valid_nm`, and the others further published tables of it. Films may
-add `[index_550]` and `[effective_mass]` (value, sigma, reference) and `continuous_above_nm`; a metal that is both fixed
-and a start gives its law under `[starting]`.
+k), the first of which is the material, over all of `valid_nm`, and the others further published tables of it. Glasses
+may add `index_sigma` (how far pieces of the kind stray in index), films `[index_550]` and `[effective_mass]` (value,
+sigma, reference) and `continuous_above_nm`; a metal that is both fixed and a start gives its law under `[starting]`.
 """
 
 import tomllib
@@ -29,7 +29,7 @@ KINDS = ("fixed", "starting")
 ORIGINS = ("measured", "handbook", "memory")
 KEYS = (
     "name", "kind", "description", "valid_nm", "reference", "origin", "laws", "parameters", "table", "starting",
-    "index_550", "effective_mass", "continuous_above_nm",
+    "index_550", "effective_mass", "continuous_above_nm", "index_sigma",
 )  # fmt: skip
 
 
@@ -101,6 +101,7 @@ class Material:
     index_550: Expectation | None = None
     effective_mass: Expectation | None = None
     continuous_above_nm: float | None = None
+    index_sigma: float | None = None
 
     @cached_property
     def dispersion(self) -> Dispersion:
@@ -200,6 +201,7 @@ class _Reader(TomlValues):
             tables=tables,
             index_550=self.expectation(content, "index_550"),
             effective_mass=self.expectation(content, "effective_mass"),
+            index_sigma=self.positive("index_sigma", content["index_sigma"]) if "index_sigma" in content else None,
             continuous_above_nm=None if continuous is None else self.positive("continuous_above_nm", continuous),
         )
 

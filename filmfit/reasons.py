@@ -37,6 +37,11 @@ TABLE: dict[str, Entry] = {
         "widen the bound if that is physical, or fix the parameter",
         "usable",
     ),
+    "law-does-not-hold": Entry(
+        "no law of the kind describes this film: its dielectric function was left nearly free, with narrow bands",
+        "name the kind of film it is (like = ...), or confirm the thickness in another way",
+        "check",
+    ),
     "law-not-determined": Entry(
         "{parameter} lies where only a product of parameters is determined ({product} = {value:.4g})",
         "compare that product between runs, not the single parameters",

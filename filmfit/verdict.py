@@ -138,6 +138,8 @@ def fit_reasons(outcome: Outcome, fits: list[Reading]) -> list[Reason]:
         reasons.append(reason("poor-fit", rms=worst.rms))
     elif chi2_per_point > STRUCTURE_GROWTH:
         reasons.append(reason("residual-structure", times=chi2_per_point**0.5))
+    if outcome.freedom.bands and outcome.freedom.size >= 1.0:
+        reasons.append(reason("law-does-not-hold"))
     for rival in outcome.rivals:
         if rival.delta_bic < RIVAL_BIC:
             reasons.append(
@@ -168,10 +170,28 @@ def parameter_reasons(solution: Solution) -> list[Reason]:
             if _on_bound(p, value):
                 bound = p.low if value - p.low < p.high - value else p.high
                 reasons.append(reason("at-a-bound", parameter=label, bound=bound))
+    reasons += product_reasons(solution)
     if instrument:
         reasons.append(reason("nuisance-far-off", nuisances=", ".join(instrument)))
     if plate:
         reasons.append(reason("substrate-mismatch", material="what was declared", what=", ".join(plate)))
+    return reasons
+
+
+def product_reasons(solution: Solution) -> list[Reason]:
+    """Return that an oscillator wider than twice its energy is known by its strength alone."""
+    reasons = []
+    for layer in solution.problem.runs[0].layers:
+        stem = f"layer.{solution.problem.runs[0].run}/{layer.name}.tauc-lorentz"
+        if stem + ".width_eV" in solution.problem.names:
+            amplitude, peak, width = (solution.value(f"{stem}.{n}_eV") for n in ("amplitude", "peak", "width"))
+            if width > 2.0 * peak:
+                label = f"{layer.name}.tauc-lorentz"
+                reasons.append(
+                    reason(
+                        "law-not-determined", parameter=label, product="amplitude x peak, eV2", value=amplitude * peak
+                    )
+                )
     return reasons
 
 

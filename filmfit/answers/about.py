@@ -3,11 +3,14 @@
 Knows the shape of the result; computes nothing but root mean squares.
 """
 
+from collections.abc import Callable
 from importlib.metadata import version
 
 import numpy as np
 
 from filmfit import __version__
+from filmfit.answers.thickness import Found
+from filmfit.fit.barrier import BARRIER_NM, moved_by_barrier
 from filmfit.fit.build import Built
 from filmfit.fit.choose import Outcome
 from filmfit.fit.inputs import RunInput
@@ -16,7 +19,9 @@ from filmfit.fit.scan import Reading
 from filmfit.materials import Expectation
 from filmfit.result import Curve, FitSummary, LimitState, Nuisance, Provenance, Quantity, Results
 from filmfit.runfile.load import RunFile
+from filmfit.stack import FloatArray
 
+BARRIER_CARRIER = "soda-lime-glass"  # the glass that is sold with silica barriers
 PACKAGES = ("lmfit", "numpy", "scipy", "tmm")
 
 
@@ -35,7 +40,9 @@ def nuisances(posterior: Posterior) -> dict[str, Nuisance]:
     return found
 
 
-def assumptions(file: RunFile, built: Built, mass: Expectation | None) -> tuple[str, ...]:
+def assumptions(
+    file: RunFile, built: Built, outcome: Outcome, posterior: Posterior, mass: Expectation | None
+) -> tuple[str, ...]:
     """Return what the answer takes for granted."""
     said = []
     plate = built.plates[0]
@@ -45,8 +52,13 @@ def assumptions(file: RunFile, built: Built, mass: Expectation | None) -> tuple[
         said.append(f"plate: {plate.material}, index within {plate.index_shift_sigma:g}")
     if file.content.substrate.back == "blackened" and any(one.quantity == "T" for one in file.content.spectrum):
         said.append("T was measured before the rear face was blackened")
+    if outcome.structures:
+        said.append(f"the data ask for: {', '.join(outcome.structures)}")
     if len(file.content.layer) == 1:
-        said.append("film directly on the plate, smooth, the same at every depth")
+        alike = "" if outcome.structures else ", smooth, the same at every depth"
+        said.append(f"film directly on the plate{alike}")
+        if plate.material == BARRIER_CARRIER and built.film[0][1] == 0:
+            said.append(_barrier(posterior))
     source = built.starting[0]
     if built.problem.index_expectations and source is not None and source.index_550 is not None:
         said.append(
@@ -55,6 +67,18 @@ def assumptions(file: RunFile, built: Built, mass: Expectation | None) -> tuple[
     if mass is not None:
         said.append(f"effective mass {mass.value:g} +- {mass.sigma:g} ({mass.reference})")
     return tuple(said)
+
+
+def _barrier(posterior: Posterior) -> str:
+    """Return what a barrier under the film that was not declared would have done to thickness and carriers."""
+    found = Found(posterior, posterior.solution.problem.runs[0].layers[0])
+    functions: dict[str, Callable[[FloatArray], float]] = {"thickness": found.layer.volume_nm}
+    plasma = found.parameter("drude.plasma_eV")
+    if plasma is not None:
+        functions["carrier density"] = lambda values: float(values[plasma]) ** 2
+    moved = moved_by_barrier(posterior, functions)
+    told = ", ".join(f"{name} {100 * share:+.1f} %" for name, share in moved.items())
+    return f"no barrier between plate and film: {BARRIER_NM:g} nm of silica there would move {told}"
 
 
 def limits(file: RunFile, results: Results) -> dict[str, LimitState]:

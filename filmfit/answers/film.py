@@ -25,6 +25,7 @@ def main_results(file: RunFile, built: Built, posterior: Posterior, main: int, m
     return Results(
         thickness_nm=depth,
         top_nm=_top(posterior),
+        roughness_nm=None if found.layer.rough is None else posterior.parameter(found.layer.rough),
         index_550=index_550(found) if shortest <= 550 <= longest else None,
         rate_nm_min=rate(depth, keys.time_s or file.content.run.time_s) if keys.deposited else None,
         **gaps(found, HC_EV_NM / longest, HC_EV_NM / shortest),
@@ -61,8 +62,9 @@ def all_layers(file: RunFile, posterior: Posterior) -> tuple[Layer, ...]:
             for name, index in zip(model.dispersion.names, model.laws, strict=True):
                 if not name.startswith("correction."):
                     parameters[name] = posterior.parameter(int(index))
-        time_s = keys.time_s or file.content.run.time_s
         laws = [name.partition(".")[0] for name in parameters]
+        parameters |= {name: posterior.parameter(index) for name, index in model.structure.items()}
+        time_s = keys.time_s or file.content.run.time_s
         layers.append(
             Layer(
                 name=keys.name,

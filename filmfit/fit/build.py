@@ -33,7 +33,9 @@ from filmfit.runfile.load import RunFile
 GLASSES = ("soda-lime-glass", "fused-silica", "borosilicate-crown-517642")
 # Iron and its state change the ultraviolet edge, the visible and the infrared band apart (common practice, no source).
 FACTOR_KNOTS_NM = np.array([330.0, 380.0, 450.0, 600.0, 800.0, 1050.0, 1400.0, 2200.0])
-INDEX_TILT_SIGMA = 0.0015  # at 390 and 1350 nm: spread of dispersion over published clear glasses (from memory)
+TILT_SHARE = (
+    0.5  # of the index shift: by how much glasses differ in dispersion to 390 and 1350 nm, as published ones do
+)
 PLATE_INDEX_LIMIT, PLATE_SHIFT_LIMIT, PLATE_FACTOR_HIGH = 0.1, 0.1, 10.0
 FEWEST_POINTS = 10
 
@@ -277,9 +279,10 @@ class _Builder:
         index_shift = Parameter(
             f"{stem}.index_shift", 0.0, -PLATE_INDEX_LIMIT, PLATE_INDEX_LIMIT, 0.0, start.index_shift_sigma
         )
+        tilt_sigma = TILT_SHARE * start.index_shift_sigma
         tilts = tuple(
             self.parameter(
-                Parameter(f"{stem}.index_{end}", 0.0, -PLATE_INDEX_LIMIT, PLATE_INDEX_LIMIT, 0.0, INDEX_TILT_SIGMA)
+                Parameter(f"{stem}.index_{end}", 0.0, -PLATE_INDEX_LIMIT, PLATE_INDEX_LIMIT, 0.0, tilt_sigma)
             )
             for end in ("blue", "red")
         )

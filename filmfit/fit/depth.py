@@ -64,6 +64,14 @@ class LayerModel:
         names = self.dispersion.names if self.dispersion is not None else ()
         return tuple(dict.fromkeys(name.partition(".")[0] for name in names))
 
+    @property
+    def structure(self) -> dict[str, int]:
+        """Indices of what makes the layer uneven, by name: contrasts in depth, thickness of a rough surface."""
+        found: dict[str, int] = {}
+        if self.grade is not None:
+            found |= {"grade_carriers": self.grade.carriers, "grade_density": self.grade.density}
+        return found if self.rough is None else {**found, "rough_nm": self.rough}
+
     def volume_nm(self, values: FloatArray) -> float:
         """Return the volume-equivalent thickness in nm for all parameters (P,): the rough surface by its solid."""
         rough = 0.0 if self.rough is None else ROUGH_SHARE * float(values[self.rough])

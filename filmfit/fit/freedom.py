@@ -15,6 +15,7 @@ BAND_FREEDOMS = tuple(Freedom(size, bands=True) for size in (0.3, 1.0, 3.0, 10.0
 # How free a correction is while rivals are compared.
 RANKING = FREEDOMS[2]
 RANKING_BANDS = BAND_FREEDOMS[1]
+EVALUATIONS = 60
 FALLS_SHORT = 1.5  # chi2 per point
 DECISIVE_BIC = 10.0  # Kass and Raftery, J. Am. Stat. Assoc. 90, 773 (1995), p. 777
 
@@ -62,10 +63,10 @@ def fitted(
     """
     problem = corrected(plain, *main, freedom)
     if near is None:
-        return solve(problem)
+        return solve(problem, EVALUATIONS)
     values: FloatArray = near[0].values.copy()
     values[plain.values.size :] *= near[1].size / freedom.size
-    return solve(problem.started(values))
+    return solve(problem.started(values), EVALUATIONS)
 
 
 def _best_of(

@@ -9,13 +9,16 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from filmfit.fit.problem import Problem
-from filmfit.fit.profile import Marginal, marginal_thickness
+from filmfit.fit.profile import Profile, thickness_profile
 from filmfit.fit.solve import Solution, solve
 from filmfit.result import COVERAGE_FACTOR, Quantity
 from filmfit.stack import FloatArray
 
 STEP_SIGMAS = 0.05  # of the difference quotient, in sigmas of each parameter
 CLEARLY_BETTER = 0.5  # in chi2
+# The data also chose how free the law is, which a covariance at that choice leaves out: found by the coverage of made
+# films, DEVELOPERS.md.
+CHOICE = 1.2**2
 PARABOLIC = 0.02  # a relative uncertainty up to which the likelihood of a thickness is a parabola
 LARGEST_RATIO = 50.0  # of the interval's ends; beyond it a parameter is not determined
 LARGEST_RELATIVE_SIGMA = 1.0  # beyond it a positive quantity is not determined
@@ -27,7 +30,7 @@ class Posterior:
 
     solution: Solution
     covariance: FloatArray
-    marginal: Marginal | None = None  # of the thickness, where no parabola does
+    profile: Profile | None = None  # of the thickness, where no parabola does
 
     @classmethod
     def of(cls, solution: Solution) -> "Posterior":
@@ -39,9 +42,12 @@ class Posterior:
         """
         residual, jacobian = solution.problem.evaluate(solution.values[list(solution.problem.free)])
         spread = np.ones(residual.size)
-        for start, stop, growth in residual_growths(solution.problem, residual):
-            spread[start:stop] = growth
-        scores = (jacobian * spread) @ jacobian.T
+        scans = list(residual_growths(solution.problem, residual))
+        # a model that fails one scan is trusted no more in the others
+        common = sum(growth * (stop - start) for start, stop, growth in scans) / scans[-1][1]
+        for start, stop, growth in scans:
+            spread[start:stop] = max(growth, common)
+        scores = (jacobian * (spread * CHOICE)) @ jacobian.T
         return cls(solution, solution.covariance @ scores @ solution.covariance)
 
     def growth(self, index: int) -> float:
@@ -50,7 +56,7 @@ class Posterior:
         return max(1.0, float(self.covariance[place, place] / self.solution.covariance[place, place]))
 
     def looked_along(self, index: int) -> "Posterior":
-        """Return the posterior with the marginal likelihood of a thickness where its parabola is too wide to be one.
+        """Return the posterior with the profile likelihood of a thickness where its parabola is too wide to be one.
 
         Where the likelihood is highest elsewhere than the fit ended, the fit goes on from there.
         """
@@ -60,11 +66,11 @@ class Posterior:
         relative = float(np.sqrt(self.covariance[place, place])) / float(self.solution.values[index])
         if relative < PARABOLIC:
             return self
-        marginal = marginal_thickness(self.solution, index, relative, self.growth(index))
-        onward = solve(self.solution.problem.started(marginal.likeliest))
+        profile = thickness_profile(self.solution, index, relative, self.growth(index))
+        onward = solve(self.solution.problem.started(profile.likeliest))
         if onward.chi2 < self.solution.chi2 - CLEARLY_BETTER:
-            return replace(Posterior.of(onward), marginal=marginal)
-        return replace(self, marginal=marginal)
+            return replace(Posterior.of(onward), profile=profile)
+        return replace(self, profile=profile)
 
     def gradient(self, function: Callable[[FloatArray], float]) -> FloatArray:
         """Return the derivatives (F,) of a function of all parameters (P,) by central differences."""
@@ -111,13 +117,13 @@ class Posterior:
         return Quantity.normal(value, max(float(self.covariance[row, row]), 0.0) ** 0.5)
 
     def thickness(self, index: int) -> Quantity | None:
-        """Return a thickness by its index among the parameters, its interval the marginal one where that was needed.
+        """Return a thickness by its index among the parameters, its interval the profile's where that was needed.
 
         None where the data do not determine it.
         """
-        if self.marginal is None or self.marginal.index != index:
+        if self.profile is None or self.profile.index != index:
             return self.positive(lambda values: float(values[index]))
-        low, high = self.marginal.low, self.marginal.high
+        low, high = self.profile.low, self.profile.high
         if high > LARGEST_RATIO * low:
             return None
         return Quantity.between(float(np.clip(self.solution.values[index], low, high)), low, high)

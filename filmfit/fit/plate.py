@@ -16,7 +16,7 @@ from filmfit.materials import Material
 from filmfit.stack import FloatArray
 
 # How far a glass of one kind strays from its published constants.
-INDEX_SIGMA = 0.003  # spread of n_d over published clear soda-lime glasses, 1.515-1.526 (from memory)
+INDEX_SIGMA = 0.003  # of a glass whose file does not say: common practice, no source
 ABSORBANCE_FACTOR_SIGMA = 0.5  # iron content of clear float glass varies about twofold, common practice, no source
 # What the bare plate's own scan leaves open.
 MEASURED_FACTOR_SIGMA = 0.03  # thickness of the coated against the bare piece, common practice, no source
@@ -56,7 +56,7 @@ def plate_of_material(material: Material, wavelength_nm: FloatArray, thickness_m
     absorbance = 4 * np.pi * index.imag * thickness_mm * 1e6 / wavelength_nm
     transparent = float(absorbance.max()) < 1e-6
     return PlateStart(
-        wavelength_nm, index.real, absorbance, material.name, INDEX_SIGMA,
+        wavelength_nm, index.real, absorbance, material.name, material.index_sigma or INDEX_SIGMA,
         0.0 if transparent else ABSORBANCE_FACTOR_SIGMA, None,
     )  # fmt: skip
 
@@ -92,7 +92,8 @@ def plate_from_scans(scans: Sequence[Scan], glasses: Sequence[Material], thickne
         found.append((misfit, glass, index, passed))
     misfit, glass, index, passed = min(found, key=lambda row: row[0])
     absorbance = _smooth(grid, passed, transmittance)
-    return PlateStart(grid, index, absorbance, glass.name, INDEX_SIGMA, MEASURED_FACTOR_SIGMA, MEASURED_SHIFT_SIGMA)
+    spread = glass.index_sigma or INDEX_SIGMA
+    return PlateStart(grid, index, absorbance, glass.name, spread, MEASURED_FACTOR_SIGMA, MEASURED_SHIFT_SIGMA)
 
 
 def internal_transmittance(transmittance: FloatArray, face_reflectance: FloatArray) -> FloatArray:

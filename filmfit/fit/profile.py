@@ -21,15 +21,15 @@ HELD_SIGMA = 1e-5  # a thickness is held by so tight an expectation, relative
 DOWNHILL = 30
 ROUNDS = 2
 FINE = 2001
-TAIL = 0.025
+FALL = 1.959964**2  # of chi2 at the ends of a normal 95 % interval
 # How a law's parameters follow a film of another thickness: thickness x (epsilon - 1) stays.
 LINEAR, ROOT, ABOUT_ONE = (".amplitude_eV", ".strength"), (".plasma_eV",), (".constant.epsilon",)
 COMMON = (".offset_nm", ".slit_nm", ".wedge")  # what a batch of trials shares
 
 
 @dataclass(frozen=True)
-class Marginal:
-    """The central 95 % interval of a thickness by its index, and all parameters (P,) of its likeliest value."""
+class Profile:
+    """The 95 % interval of a thickness by its index, and all parameters (P,) of its likeliest value."""
 
     index: int
     low: float
@@ -37,11 +37,8 @@ class Marginal:
     likeliest: FloatArray
 
 
-def marginal_thickness(solution: Solution, index: int, relative_sigma: float, growth: float) -> Marginal:
-    """Return the marginal likelihood's interval of a thickness, flat beforehand in its logarithm.
-
-    At each value of the thickness all else is fitted anew, and the room that is left to it counts with the misfit
-    (Laplace's method).
+def thickness_profile(solution: Solution, index: int, relative_sigma: float, growth: float) -> Profile:
+    """Return the interval of a thickness by its profile likelihood: at each value of it all else is fitted anew.
 
     Args:
         solution: a fit in which the thickness is free.
@@ -49,7 +46,7 @@ def marginal_thickness(solution: Solution, index: int, relative_sigma: float, gr
         relative_sigma: of the parabola, which sets the range that is looked at.
         growth: by which the residuals ask variances to grow; misfits shrink by it.
 
-    Reference: Tierney and Kadane, J. Am. Stat. Assoc. 81, 82 (1986); tests/rooms/test_profile.py.
+    Reference: Venzon and Moolgavkar, J. R. Stat. Soc. C 37, 87 (1988); tests/rooms/test_profile.py.
     """
     span = float(np.clip(SPAN_SIGMAS * relative_sigma, LEAST_SPAN, MOST_SPAN))
     parameter = solution.problem.parameters[index]
@@ -65,12 +62,11 @@ def marginal_thickness(solution: Solution, index: int, relative_sigma: float, gr
         starts = _best_of_neighbours(problem, starts, index, depths)
     ended = descend(problem, starts[list(problem.free)], DOWNHILL)
     starts[list(problem.free)] = ended.values
-    _, jacobian = problem.evaluate(ended.values)
-    levels = ended.chi2 / growth + _log_information(jacobian)
+    levels = ended.chi2 / growth
     low, high = _ends(offsets, levels)
     centre = float(solution.values[index])
     likeliest = starts[:, int(np.argmin(levels))]
-    return Marginal(index, centre * float(np.exp(low)), centre * float(np.exp(high)), likeliest)
+    return Profile(index, centre * float(np.exp(low)), centre * float(np.exp(high)), likeliest)
 
 
 def _best_of_neighbours(problem: Problem, trials: FloatArray, index: int, depths: FloatArray) -> FloatArray:
@@ -117,17 +113,8 @@ def _held(problem: Problem, index: int, depths: FloatArray) -> Problem:
     return replace(problem, parameters=tuple(parameters)).binned(GROUP_NM)
 
 
-def _log_information(jacobian: FloatArray) -> FloatArray:
-    """Return ln det (J J^T) (B,) of derivatives (F, B, M)."""
-    by_trial = np.moveaxis(jacobian, 0, 1)
-    logarithm: FloatArray = np.linalg.slogdet(by_trial @ np.swapaxes(by_trial, 1, 2))[1]
-    return logarithm
-
-
 def _ends(offsets: FloatArray, levels: FloatArray) -> tuple[float, float]:
-    """Return where the tails of exp(-level / 2) over the logarithm hold their share."""
+    """Return where the likelihood has fallen as far as a normal one has at its 95 % ends."""
     fine = np.linspace(offsets[0], offsets[-1], FINE)
-    weight = np.exp(-0.5 * (PchipInterpolator(offsets, levels - levels.min())(fine)))
-    cumulative = np.concatenate([[0.0], np.cumsum(0.5 * (weight[1:] + weight[:-1]))])
-    low, high = np.interp([TAIL, 1.0 - TAIL], cumulative / cumulative[-1], fine)
-    return float(low), float(high)
+    inside = fine[PchipInterpolator(offsets, levels - levels.min())(fine) <= FALL]
+    return float(inside[0]), float(inside[-1])

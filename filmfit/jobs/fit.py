@@ -133,7 +133,7 @@ def _answer(
         layers=() if answer == "unusable" else all_layers(file, posterior),
         instrument=nuisances(posterior),
         alternatives=tuple(alternatives),
-        assumptions=assumptions(file, built, mass),
+        assumptions=assumptions(file, built, outcome, posterior, mass),
         limits=limits(file, results),
         fit=summary(outcome, built.film[0][1], fits, time.perf_counter() - started),
         provenance=provenance(file, given, difference),

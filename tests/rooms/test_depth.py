@@ -40,7 +40,7 @@ def test_derivatives_are_difference_quotients(problem):
         above, below = (problem.predict(values + sign * step)[0].values for sign in (1, -1))
         quotient = (above - below) / (2 * step[at])
         # slit and offset act through slopes in wavelength, whose own dependence on parameters is left out
-        loose = 1e-2 if parameter.name.endswith(("slit_nm", "offset_nm")) else 3e-3
+        loose = 2e-2 if parameter.name.endswith(("slit_nm", "offset_nm")) else 3e-3
         assert seen.jacobian[at] == pytest.approx(quotient, abs=loose * np.abs(quotient).max() + 1e-9), parameter.name
 
 

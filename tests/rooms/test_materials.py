@@ -123,7 +123,8 @@ def test_a_table_is_never_carried_on_beyond_its_ends():
         (HEAD + LAW.replace("value = 2.25, ", ""), "x.toml: constant.epsilon: missing; allowed: a finite number"),
         (HEAD + 'refrence = "r"\n' + LAW,
          "x.toml: refrence: unknown key; allowed: name, kind, description, valid_nm, reference, origin, laws, "
-         "parameters, table, starting, index_550, effective_mass, continuous_above_nm; did you mean 'reference'?"),
+         "parameters, table, starting, index_550, effective_mass, continuous_above_nm, index_sigma; "
+         "did you mean 'reference'?"),
     ],
 )  # fmt: skip
 def test_a_faulty_file_is_told_in_one_sentence(tmp_path, content, sentence):

@@ -57,7 +57,8 @@ def test_a_good_fit_does_not_grow_and_a_wrong_noise_does(make):
     # half the noise claimed is four times the chi2
     assert min(growths(too_sure)) > 3.5 * 0.8
     thickness = problem.index("layer.run0/film.thickness_nm")
-    assert Posterior.of(too_sure).growth(thickness) > 3.5 * 0.8
+    # expectations are not grown, so a thickness grows by a little less than the scans do
+    assert Posterior.of(too_sure).growth(thickness) > 1.5
 
 
 def test_derived_quantities_carry_correlations(make):
