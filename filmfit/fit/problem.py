@@ -6,11 +6,12 @@ One run is N = 1: joint fits, shared instruments and the bare plate are the same
 
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 
 from filmfit.dispersion.compose import index_from_epsilon
-from filmfit.fit.depth import LayerModel
+from filmfit.fit.depth import IndexArray, LayerModel
 from filmfit.fit.model import Prediction, RunModel
 from filmfit.stack import FloatArray
 from filmfit.units import HC_EV_NM
@@ -128,18 +129,31 @@ class Problem:
             weight = 1.0 / np.concatenate([scan.sigma for scan in run.scans])
             residuals.append((seen.values - measured) * weight)
             jacobians.append(seen.jacobian[free] * weight)
-        for residual, jacobian in self._expectations(values):
+        which, centre, sigma = self._expected
+        if which.size:
+            if centre.ndim < free_values.ndim:
+                centre, sigma = centre[:, None], sigma[:, None]
+            residuals.append(np.moveaxis((values[which] - centre) / sigma, 0, -1))
+            own = (np.array(free)[:, None] == which)[(..., *(None for _ in free_values.shape[1:]))] / sigma
+            jacobians.append(np.moveaxis(np.broadcast_to(own, (len(free), *values[which].shape)), 1, -1))
+        for residual, jacobian in self._index_expectations(values):
             residuals.append(residual[..., None])
             jacobians.append(jacobian[free][..., None])
         return np.concatenate(residuals, axis=-1), np.concatenate(jacobians, axis=-1)
 
-    def _expectations(self, values: FloatArray) -> Iterable[tuple[FloatArray, FloatArray]]:
-        """Yield each expectation's residual (...,) and derivatives (P, ...)."""
-        for i, p in enumerate(self.parameters):
-            if p.sigma is not None and p.vary:
-                jacobian = np.zeros_like(values)
-                jacobian[i] = 1.0 / p.sigma
-                yield (values[i] - (p.expected if p.expected is not None else p.start)) / p.sigma, jacobian
+    @cached_property
+    def _expected(self) -> tuple[IndexArray, FloatArray, FloatArray]:
+        """Indices (K,) of the free parameters that are expected somewhere, where and how surely, (K,) or (K, B)."""
+        found = [(i, p, p.expected if p.expected is not None else p.start) for i, p in enumerate(self.parameters)]
+        found = [row for row in found if row[1].sigma is not None and row[1].vary]
+        if not found:
+            return np.empty(0, np.intp), np.empty(0), np.empty(0)
+        pairs = np.broadcast_arrays(*(row[2] for row in found), *(row[1].sigma for row in found))  # type: ignore[arg-type]
+        centre, sigma = np.array(pairs[: len(found)]), np.array(pairs[len(found) :])
+        return np.array([row[0] for row in found]), centre, sigma
+
+    def _index_expectations(self, values: FloatArray) -> Iterable[tuple[FloatArray, FloatArray]]:
+        """Yield each index expectation's residual (...,) and derivatives (P, ...)."""
         for expectation in self.index_expectations:
             layer = self.runs[expectation.run].layers[expectation.layer]
             yield _index_residual(expectation, layer, values)
