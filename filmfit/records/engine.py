@@ -14,7 +14,7 @@ from filmfit.errors import RecordsError
 from filmfit.records.tables import dumps
 
 BUSY_TIMEOUT_MS = 10_000
-NEWEST = "0001"  # the schema that this program writes
+NEWEST = "0002"  # the schema that this program writes
 READ_ONLY = {"read_only": True}
 
 
