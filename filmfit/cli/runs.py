@@ -8,11 +8,16 @@ from typing import Any
 import click
 
 from filmfit.cli.options import json_option, records_option
+from filmfit.cli.runs_changes import amend, backup, confirm, event, export, import_, leave_out
 
 
 @click.group(epilog="Example: filmfit runs list")
 def runs() -> None:
-    """List and show the runs in the deposition records."""
+    """List, show, bring in, correct and copy the runs in the deposition records."""
+
+
+for command in (import_, export, confirm, amend, leave_out, event, backup):
+    runs.add_command(command)
 
 
 @runs.command("list", epilog="Example: filmfit runs list --last 20")
@@ -26,7 +31,7 @@ def list_(records: str, json_to: str | None, last: int | None, film: str | None)
     from filmfit.records.store import Records
     from filmfit.report.text import runs_text
 
-    _must_exist(records)
+    must_exist(records)
     with Records(records) as store:
         found = store.list_runs(last, film)
     if json_to is None:
@@ -45,7 +50,7 @@ def show(run: str, records: str, json_to: str | None) -> None:
     from filmfit.records.store import Records
     from filmfit.report.text import run_text
 
-    _must_exist(records)
+    must_exist(records)
     with Records(records) as store:
         found = store.show(run)
     if json_to is None:
@@ -54,7 +59,7 @@ def show(run: str, records: str, json_to: str | None) -> None:
     write_json({"schema": "filmfit.run/1", **_plain(found)}, json_to)
 
 
-def _must_exist(records: str) -> None:
+def must_exist(records: str) -> None:
     """Refuse to make new records where someone only wants to look."""
     from filmfit.cli.options import records_path
     from filmfit.errors import RecordsError

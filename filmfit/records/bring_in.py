@@ -12,7 +12,7 @@ from sqlalchemy import func, insert, select
 from sqlalchemy.orm import Session
 
 from filmfit.rates.rate import SECONDS_PER_MINUTE
-from filmfit.records.revise import Change, batches, choose, differences, fields, piece
+from filmfit.records.revise import AMENDED, Change, batches, choose, differences, fields, piece
 from filmfit.records.store import Records
 from filmfit.records.tables import FitRow, RevisionRow, RunRow
 from filmfit.result import COVERAGE_FACTOR
@@ -59,9 +59,7 @@ class BroughtIn:
     changes: tuple[Change, ...]
 
 
-def bring_in(
-    records: Records, rows: Sequence[Incoming], sha256: str, dry_run: bool = False
-) -> tuple[BroughtIn, ...]:
+def bring_in(records: Records, rows: Sequence[Incoming], sha256: str, dry_run: bool = False) -> tuple[BroughtIn, ...]:
     """File the runs of a log in one transaction; what is there already in the same words is left as it is.
 
     Args:
@@ -121,7 +119,8 @@ def _known(session: Session, ids: Sequence[str]) -> dict[tuple[str, str, str], t
     pieces = {}
     for one in session.scalars(select(RevisionRow).where(RevisionRow.run_id.in_(ids)).order_by(RevisionRow.number)):
         pieces[one.id] = key = (one.run_id, one.sample, one.state)
-        known[key] = (one, None)
+        if one.run_file != AMENDED:  # the same log again does not take back what a person amended since
+            known[key] = (one, None)
     for fit in session.scalars(select(FitRow).where(FitRow.run_id.in_(ids)).order_by(FitRow.number)):
         if fit.result.get("schema") == IMPORTED:
             key = pieces[fit.revision_id]
@@ -186,5 +185,6 @@ def _fit(row: Incoming, revision_id: int, number: int, now: datetime) -> dict[st
         value = parts[f"thickness{part}_nm"]
         depth[name] = value
         rates[f"rate{part}_nm_min"] = None if value is None or per_nm is None else value * per_nm
+    told = {"schema": IMPORTED, "run": row.id, "results": {"thickness_nm": depth}}
     return {"run_id": row.id, "revision_id": revision_id, "number": number, "answer": "usable", "created": now,
-            "result": {"schema": IMPORTED, "run": row.id, "results": {"thickness_nm": depth}}, **parts, **rates}  # fmt: skip
+            "result": told, **parts, **rates}  # fmt: skip

@@ -14,7 +14,7 @@ from sqlalchemy import select
 from sqlalchemy.orm import Session
 
 from filmfit.errors import RecordsError, nearest
-from filmfit.records.revise import choose, revise
+from filmfit.records.revise import AMENDED, choose, revise
 from filmfit.records.store import Records
 from filmfit.records.tables import EditRow, EventRow, FitRow, RevisionRow, RunRow
 
@@ -76,8 +76,8 @@ def amend(
     """
 
     def work(session: Session) -> int:
-        present = _present(session, _run(session, records, run_id))
-        revision, _ = revise(session, new, present.run_file)
+        _run(session, records, run_id)
+        revision, _ = revise(session, new, AMENDED)
         for key, (old, value) in changes.items():
             session.add(_edit(run_id, "amend", key, old, value, who, because))
         choose(session, run_id)

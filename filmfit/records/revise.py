@@ -15,6 +15,7 @@ from sqlalchemy.orm import Session
 from filmfit.records.tables import FitRow, RevisionRow, RunRow
 
 NOT_STATED = "-"
+AMENDED = "amended"  # stands where a revision that a file brought has the file's checksum
 AS_DEPOSITED = "as-deposited"
 BATCH = 500  # numbers of values in one IN (...): SQLite's oldest limit is 999
 Row = TypeVar("Row")
@@ -35,7 +36,7 @@ def revise(session: Session, conditions: dict[str, Any], sha256: str) -> tuple[R
     Args:
         session: an open transaction.
         conditions: everything in the run file as plain JSON types.
-        sha256: checksum of the run file.
+        sha256: checksum of the run file, or AMENDED.
     """
     keys = conditions["run"]
     sample, state = piece(conditions)
@@ -46,7 +47,11 @@ def revise(session: Session, conditions: dict[str, Any], sha256: str) -> tuple[R
         session.add(run)
         session.flush()
     rows = session.scalars(select(RevisionRow).where(RevisionRow.run_id == run.id).order_by(RevisionRow.number)).all()
-    latest = next((one for one in reversed(rows) if (one.sample, one.state) == (sample, state)), None)
+    mine = [one for one in rows if (one.sample, one.state) == (sample, state)]
+    latest = mine[-1] if mine else None
+    filed = next((one for one in reversed(mine) if one.run_file != AMENDED), None)
+    if latest is not None and filed is not None and sha256 != AMENDED and filed.conditions == conditions:
+        return latest, ()  # the same file again does not take back what a person amended since
     changes = differences(latest.conditions, conditions) if latest is not None else ()
     if latest is not None and not changes:
         return latest, ()

@@ -50,6 +50,7 @@ def deposited(
     source: str | None = None,
     process: str | None = None,
     with_result: bool = False,
+    left_out: bool = False,
 ) -> tuple[Deposited, ...]:
     """Return the runs that were not left out, the oldest first; each argument narrows the choice.
 
@@ -57,6 +58,7 @@ def deposited(
         records: open records.
         film, chamber, source, process: as the run file states them; "-" where it states none.
         with_result: fetch each run's whole result too.
+        left_out: the runs that were left out as well.
 
     Raises:
         RecordsError: they cannot be read.
@@ -72,9 +74,10 @@ def deposited(
         select(*columns)
         .join(RevisionRow, and_(RevisionRow.run_id == RunRow.id, RevisionRow.number == RunRow.revision))
         .outerjoin(FitRow, and_(FitRow.run_id == RunRow.id, FitRow.number == RunRow.fit))
-        .where(RunRow.left_out.is_(None))
         .order_by(RunRow.date, RunRow.id)
     )
+    if not left_out:
+        wanted = wanted.where(RunRow.left_out.is_(None))
     given = ((RunRow.film, film), (RunRow.chamber, chamber), (RunRow.source, source), (RunRow.process, process))
     for column, value in given:
         if value is not None:

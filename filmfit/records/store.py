@@ -14,8 +14,8 @@ from sqlalchemy.exc import IntegrityError, SQLAlchemyError
 from sqlalchemy.orm import Session
 
 from filmfit.errors import RecordsError, nearest
-from filmfit.records.engine import READ_ONLY, open_engine, told
 from filmfit.rates.rate import rate_nm_min
+from filmfit.records.engine import READ_ONLY, open_engine, told
 from filmfit.records.revise import Change, batches, choose, revise
 from filmfit.records.tables import EditRow, FitRow, RevisionRow, RunRow
 from filmfit.result import Quantity, Result
@@ -244,14 +244,14 @@ def _quantity(value: float | None, sigma: float | None, low: float | None, high:
 def _summaries(session: Session, runs: Sequence[RunRow]) -> list[RunSummary]:
     """Return the lines of some runs, each with the fit that counts and the rate of its present conditions."""
     ids = [run.id for run in runs]
-    counts = {name: count for name, count in session.execute(
-        select(FitRow.run_id, func.count()).where(FitRow.run_id.in_(ids)).group_by(FitRow.run_id))}  # fmt: skip
     mine = RunRow.id.in_(ids)
-    fits = {fit.run_id: fit for fit in session.scalars(
-        select(FitRow).join(RunRow, and_(RunRow.id == FitRow.run_id, RunRow.fit == FitRow.number)).where(mine))}  # fmt: skip
-    revisions = {one.run_id: one.conditions for one in session.scalars(
-        select(RevisionRow).join(RunRow, and_(RunRow.id == RevisionRow.run_id, RunRow.revision == RevisionRow.number))
-        .where(mine))}  # fmt: skip
+    counted = select(FitRow.run_id, func.count()).where(FitRow.run_id.in_(ids)).group_by(FitRow.run_id)
+    counts: dict[str, int] = {row[0]: row[1] for row in session.execute(counted)}
+    that_counts = and_(RunRow.id == FitRow.run_id, RunRow.fit == FitRow.number)
+    fits = {fit.run_id: fit for fit in session.scalars(select(FitRow).join(RunRow, that_counts).where(mine))}
+    present = and_(RunRow.id == RevisionRow.run_id, RunRow.revision == RevisionRow.number)
+    found = session.scalars(select(RevisionRow).join(RunRow, present).where(mine))
+    revisions = {one.run_id: one.conditions for one in found}
     lines = []
     for run in runs:
         fit = fits.get(run.id)
