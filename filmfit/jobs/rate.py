@@ -13,7 +13,8 @@ from numpy.typing import NDArray
 
 from filmfit.jobs.rate_groups import Group, common_share, exposure, groups, lives, series
 from filmfit.rates.chart import ewma, individuals, robust_sigma, trend
-from filmfit.rates.law import Law, fit_law
+from filmfit.rates.fit_law import fit_law
+from filmfit.rates.law import Law
 from filmfit.rates.rate import SECONDS_PER_MINUTE
 from filmfit.records.edits import Event, events
 from filmfit.records.series import Deposited, deposited
@@ -181,7 +182,7 @@ def _charted(law: Law, target_nm_min: float | None, in_line: bool) -> FloatArray
     depths = [law.log_depth(float(time), law.middle.get("wear"), {}, per_time=True)[0] for time in law.series.time[:1]]
     wear = 0.0 if law.series.wear is None else np.log1p(law.get("wear") * (law.series.wear - law.middle["wear"]))
     target = np.log(target_nm_min / (1.0 if in_line else SECONDS_PER_MINUTE))
-    return np.asarray(law.residual + wear + depths[0] - law.level - target, dtype=float)
+    return np.asarray(law.residual + wear + depths[0] - target, dtype=float)
 
 
 def alarms_of(runs: Sequence[Deposited], values: FloatArray, instrument_days: set[date]) -> list[Alarm]:

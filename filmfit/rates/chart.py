@@ -15,9 +15,9 @@ from scipy.special import stdtr
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
 
-D2 = 2 / np.sqrt(np.pi)  # mean of |x1 - x2| of a normal distribution, in its standard deviations
-MEDIAN_RANGE = 0.9538725524  # its median: sqrt(2) times the upper quartile of the normal distribution
 LIMIT = 3.0
+D2 = 2 / np.sqrt(np.pi)  # mean of |x1 - x2| of a normal distribution, in its standard deviations
+D4 = 1 + LIMIT * np.sqrt(np.pi / 2 - 1)  # upper limit of a moving range, in mean ranges
 ALARM_CHANCE = 0.0026997961  # of three standard deviations, two-sided
 
 
@@ -38,8 +38,19 @@ def range_sigma(values: FloatArray) -> float:
 
 
 def robust_sigma(values: FloatArray) -> float:
-    """Return the standard deviation from the median moving range, which single blunders do not widen."""
-    return float(np.median(np.abs(np.diff(values))) / MEDIAN_RANGE)
+    """Return the standard deviation from the mean moving range, ranges beyond their own limit left out.
+
+    Args:
+        values: (N,), N >= 2.
+
+    Single blunders then do not widen the limits that are to find them; without any it is MRbar/d2.
+    """
+    ranges = np.abs(np.diff(values))
+    while True:
+        within = ranges <= D4 * ranges.mean()
+        if within.all():
+            return float(ranges.mean() / D2)
+        ranges = ranges[within]
 
 
 def individuals(values: FloatArray, target: float | None = None, sigma: float | None = None) -> Chart:

@@ -3,6 +3,7 @@
 Knows matplotlib; draws what it is given and computes only what is drawn.
 """
 
+import warnings
 from collections.abc import Sequence
 from io import BytesIO
 from typing import Any
@@ -32,7 +33,8 @@ def draw_rate(law: Law, title: str, outside: Sequence[bool], in_line: bool) -> b
         outside: which runs are out of control (N,).
         in_line: the exposure is passes over speed.
     """
-    with mpl.rc_context({**SETTINGS}), warnings.catch_warnings():
+    with mpl.rc_context({**SETTINGS}), warnings.catch_warnings():  # type: ignore[dict-item] # stubs: literals only
+        warnings.filterwarnings("ignore", message="Glyph .* missing")  # a film may be named in any script
         figure = Figure(figsize=(6.6, 5.4), layout="constrained")
         upper, lower = figure.subplots(2, 1, height_ratios=(3, 2))
         out = np.asarray(outside)
@@ -89,15 +91,16 @@ def draw_trend(points: Sequence[tuple[str, float, Quantity]], of: str, against: 
         against: the condition's name.
         best: where the optimum lies.
     """
-    with mpl.rc_context({**SETTINGS}), warnings.catch_warnings():
+    with mpl.rc_context({**SETTINGS}), warnings.catch_warnings():  # type: ignore[dict-item] # stubs: literals only
+        warnings.filterwarnings("ignore", message="Glyph .* missing")  # a film may be named in any script
         figure = Figure(figsize=(6.2, 4.0), layout="constrained")
         axes = figure.subplots()
         for number, name in enumerate(sorted({one[0] for one in points})):
             mine = [one for one in points if one[0] == name and one[2].value is not None]
-            sigma = [one[2].sigma or 0.0 for one in mine]
-            axes.errorbar([one[1] for one in mine], np.array([one[2].value for one in mine], dtype=float), yerr=np.array(sigma), ls="none",
-                          marker=MARKS[number % len(MARKS)], ms=4, lw=0.8, color=COLOURS[number % len(COLOURS)],
-                          label=plain(name))  # fmt: skip
+            y = np.array([one[2].value for one in mine], dtype=float)
+            sigma = np.array([one[2].sigma or 0.0 for one in mine])
+            axes.errorbar([one[1] for one in mine], y, yerr=sigma, ls="none", marker=MARKS[number % len(MARKS)], ms=4,
+                          lw=0.8, color=COLOURS[number % len(COLOURS)], label=plain(name))  # fmt: skip
         if best is not None and best.low is not None and best.high is not None and best.value is not None:
             axes.axvspan(best.low, best.high, color=GREY, alpha=0.3, lw=0)
             axes.axvline(best.value, color=INK, lw=0.8)

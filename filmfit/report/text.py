@@ -67,6 +67,8 @@ def quantity(got: Quantity | None, unit: str) -> str:
         if got.low is not None:
             return f"at least {number(got.low, None)}{tail}"
         return f"at most {number(got.high or 0.0, None)}{tail}"
+    if got.low is None and got.high is None:
+        return f"{number(got.value, got.sigma)}{tail}"
     ends = " to ".join(number(end, got.sigma, got.value) for end in (got.low, got.high) if end is not None)
     return f"{number(got.value, got.sigma)}{tail}   (95 %: {ends})"
 
