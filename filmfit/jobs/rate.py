@@ -179,10 +179,8 @@ def _charted(law: Law, target_nm_min: float | None, in_line: bool) -> FloatArray
     """Return what is charted (N,): ln of each run's rate over the law's, or over the target."""
     if target_nm_min is None:
         return law.residual
-    depths = [law.log_depth(float(time), law.middle.get("wear"), {}, per_time=True)[0] for time in law.series.time[:1]]
-    wear = 0.0 if law.series.wear is None else np.log1p(law.get("wear") * (law.series.wear - law.middle["wear"]))
     target = np.log(target_nm_min / (1.0 if in_line else SECONDS_PER_MINUTE))
-    return np.asarray(law.residual + wear + depths[0] - target, dtype=float)
+    return np.asarray(law.residual + law.steady_log_rate() - target, dtype=float)
 
 
 def alarms_of(runs: Sequence[Deposited], values: FloatArray, instrument_days: set[date]) -> list[Alarm]:

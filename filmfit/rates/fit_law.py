@@ -181,5 +181,5 @@ def _mixed(
     wander = branches[best].wander if 2 * (told[best] - told[0]) > WANDER_EVIDENCE else 0.0
     scatter = float(np.sqrt(sum(one.weight * one.scatter**2 for one in branches)))
     freedom = int(kept.sum()) - len(names)
-    rest = _rest(series, names, found, middle)
+    rest = _rest(series, names, branches[0].values, middle)
     return Law(series, names, found, covariance, middle, kept, freedom, scatter, wander, branches, rest)

@@ -6,7 +6,7 @@ Knows arrays in the order of the runs; does not know records. Each coefficient i
 design.py says which.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -49,7 +49,10 @@ class Branch:
 
 @dataclass(frozen=True)
 class Law:
-    """A fitted law; `values` and `covariance` in the order of `names`, scatter relative."""
+    """A fitted law; `values` and `covariance` in the order of `names`, scatter relative.
+
+    `residual` is what the law with a steady level leaves of ln d: what charts show.
+    """
 
     series: Series
     names: tuple[str, ...]
@@ -76,6 +79,15 @@ class Law:
         """Return a coefficient's standard uncertainty."""
         at = self.names.index(name)
         return float(np.sqrt(self.covariance[at, at]))
+
+    def steady_log_rate(self) -> FloatArray:
+        """Return ln of the rate (N,) that the law with a steady level has for each run at the last run's conditions."""
+        last = {name: np.full_like(value, value[-1]) for name, value in self.series.conditions.items()}
+        at = replace(self.series, conditions=last)
+        steady = self.branches[0].values
+        exposure = np.maximum(self.series.time - dict(zip(self.names, steady, strict=True)).get("dead", 0.0), 1e-9)
+        log_rate: FloatArray = model(at, self.names, steady, self.middle)[0] - np.log(exposure)
+        return log_rate
 
     def log_depth(
         self, time: float, wear: float | None, conditions: dict[str, float], per_time: bool = False

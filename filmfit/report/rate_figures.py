@@ -57,8 +57,7 @@ def _rates(axes: Axes, law: Law, out: Any, in_line: bool) -> None:
     half = law.factor * np.hypot(np.array([one[1] for one in seen]), law.scatter)
     axes.fill_between(ends, unit * np.exp(middle - half), unit * np.exp(middle + half), color=GREY, alpha=0.3, lw=0)
     axes.plot(ends, unit * np.exp(middle), color=INK)
-    here = [law.log_depth(time, None if series.wear is None else float(one), last, per_time=True)[0] for one in x]
-    points = unit * np.exp(np.array(here) + law.residual)
+    points = unit * np.exp(law.steady_log_rate() + law.residual)
     axes.plot(x[~out], points[~out], "o", ms=3.5, color=BLUE)
     axes.plot(x[out], points[out], "s", ms=5, color=VERMILION)
     axes.set_xlabel("run" if series.wear is None else "source energy (kWh)")
