@@ -137,18 +137,19 @@ def leave_out(run: str, take_in: bool, who: str, because: str, records: str) -> 
 
 @click.command("event", epilog="Example: filmfit runs event --chamber K2 --date 2026-04-17 --kind target-changed")
 @click.option("--chamber", required=True, metavar="NAME")
+@click.option("--source", metavar="NAME", help="This source of the chamber only (default: all).")
 @click.option("--date", "day", required=True, type=click.DateTime(["%Y-%m-%d"]), help="From this day on.")
 @click.option("--kind", required=True, type=click.Choice(EVENT_KINDS))
 @click.option("--note", default="", metavar="TEXT", help="In your own words.")
 @click.option("--who", default=_name, metavar="NAME", help="Who says so (default: the user's name).")
 @records_option
-def event(chamber: str, day: datetime, kind: str, note: str, who: str, records: str) -> None:
+def event(chamber: str, source: str | None, day: datetime, kind: str, note: str, who: str, records: str) -> None:
     """Tell what was done to a chamber; the runs from that day on are a segment of their own."""
     from filmfit.records import edits
     from filmfit.records.store import Records
 
     with Records(records) as store:
-        new = edits.tell_event(store, edits.Event(chamber, day.date(), kind, note), who)
+        new = edits.tell_event(store, edits.Event(chamber, day.date(), kind, note, source), who)
     click.echo(f"{chamber}, {day:%Y-%m-%d}: {kind}{'' if new else ' is there already'}")
 
 

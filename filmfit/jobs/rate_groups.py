@@ -67,7 +67,7 @@ def lives(group: Group, events: Sequence[Event]) -> list[tuple[tuple[Deposited, 
     Other events of the chamber and changes of recipe begin a segment; where that would leave fewer than four runs a
     segment, recipes are not told apart.
     """
-    mine = [event for event in events if event.chamber == group.chamber]
+    mine = [event for event in events if event.concerns(group.chamber, group.source)]
     changed = [event.date for event in mine if event.kind == "target-changed"]
     other = [event.date for event in mine if event.kind != "target-changed"]
     parts: dict[int, list[Deposited]] = {}

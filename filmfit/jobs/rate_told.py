@@ -5,6 +5,7 @@ Knows the schema filmfit.rate/1; computes nothing.
 
 from typing import Any
 
+from filmfit.jobs.crystal import tooling
 from filmfit.jobs.rate import Alarm, GroupRate, Rates, scaled
 from filmfit.result import Quantity
 
@@ -41,6 +42,7 @@ def _group(one: GroupRate) -> dict[str, Any]:
         "scatter_percent": None if law is None else 100 * law.scatter,
         "level": None if law is None else "varies" if law.wander else "steady",
         "projected_rate": _plain(one.projected),
+        "crystal_tooling_percent": _plain(tooling(one.runs)),
         "segments": one.segments,
         "target_lives": one.lives,
         "alarms": _alarms(one.alarms),

@@ -61,7 +61,7 @@ def trend(store: Records, of: str, against: str, **which: Any) -> TrendFound:
         conditions += x is not None
         if x is None or y is None or y.value is None:
             continue
-        segment = sum(one.date <= run.date for one in happened if one.chamber == run.chamber)
+        segment = sum(one.date <= run.date for one in happened if one.concerns(run.chamber, run.source))
         name = " / ".join([run.chamber, run.source, run.film, run.process] + ([str(segment)] if segment else []))
         points.append(Point(run.id, name, x, y))
     if not results:

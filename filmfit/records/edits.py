@@ -23,12 +23,17 @@ EVENT_KINDS = ("target-changed", "vented", "shields-changed", "lamp-or-mirror-ch
 
 @dataclass(frozen=True)
 class Event:
-    """What happened to a chamber on a day: one of EVENT_KINDS."""
+    """What happened to a chamber, or to one source in it, on a day: one of EVENT_KINDS."""
 
     chamber: str
     date: date
     kind: str
     note: str
+    source: str | None = None
+
+    def concerns(self, chamber: str, source: str) -> bool:
+        """Say whether the runs of a source in a chamber are concerned."""
+        return self.chamber == chamber and self.source in (None, source)
 
 
 def confirm(records: Records, run_id: str, fit: int, who: str, because: str = "") -> int | None:
@@ -105,13 +110,17 @@ def tell_event(records: Records, event: Event, who: str) -> bool:
 
     def work(session: Session) -> bool:
         same = select(EventRow).where(
-            EventRow.chamber == event.chamber, EventRow.date == event.date, EventRow.kind == event.kind
+            EventRow.chamber == event.chamber,
+            EventRow.date == event.date,
+            EventRow.kind == event.kind,
+            EventRow.source.is_not_distinct_from(event.source),
         )
         if session.scalars(same).first() is not None:
             return False
         now = datetime.now(UTC)
-        session.add(EventRow(chamber=event.chamber, date=event.date, kind=event.kind, note=event.note, created=now))
-        told = {"chamber": event.chamber, "date": event.date.isoformat(), "kind": event.kind, "note": event.note}
+        columns = {"chamber": event.chamber, "source": event.source, "kind": event.kind, "note": event.note}
+        session.add(EventRow(date=event.date, created=now, **columns))
+        told = {**columns, "date": event.date.isoformat()}
         session.add(_edit(None, "event", event.kind, None, told, who, event.note))
         return True
 
@@ -123,7 +132,7 @@ def events(records: Records) -> tuple[Event, ...]:
 
     def work(session: Session) -> tuple[Event, ...]:
         rows = session.scalars(select(EventRow).order_by(EventRow.date, EventRow.id))
-        return tuple(Event(one.chamber, one.date, one.kind, one.note) for one in rows)
+        return tuple(Event(one.chamber, one.date, one.kind, one.note, one.source) for one in rows)
 
     return records.transact(work, reading=True)
 

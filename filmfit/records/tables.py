@@ -128,6 +128,7 @@ class EventRow(Base):
 
     id: Mapped[int] = mapped_column(primary_key=True)
     chamber: Mapped[str] = mapped_column(String(200), index=True)
+    source: Mapped[str | None] = mapped_column(String(200))  # None: all sources of the chamber
     date: Mapped[date] = mapped_column(Date)
     kind: Mapped[str] = mapped_column(String(40))
     note: Mapped[str] = mapped_column(Text)

@@ -17,6 +17,7 @@ LABELS = (
     ("dead_time_s", "dead time", "s"),
     ("drift_percent_per_kWh", "drift, of the new source's rate", "%/kWh"),
     ("projected_rate", "rate at the end asked for", "nm/min"),
+    ("crystal_tooling_percent", "new tooling, to type in", "%"),
     ("mean", "mean", ""),
 )
 

@@ -117,6 +117,7 @@ def test_a_target_change_begins_a_new_life_and_a_vent_a_segment(store):
     tell_event(store, Event("K1", datetime.date(2026, 1, 31), "target-changed", ""), "me")
     tell_event(store, Event("K1", datetime.date(2026, 2, 15), "vented", ""), "me")
     tell_event(store, Event("K2", datetime.date(2026, 2, 15), "target-changed", ""), "me")
+    tell_event(store, Event("K1", datetime.date(2026, 2, 10), "target-changed", "", "T2"), "me")
     (group,) = rates_json(rates(store))["groups"]
     assert (group["target_lives"], group["segments"], group["runs"], group["runs_in_law"]) == (2, 2, 60, 30)
 
@@ -142,6 +143,24 @@ def test_an_alarm_that_a_control_plate_shares_is_the_instruments(store):
     assert (kinds["R020"], kinds["R010"]) == ("instrument", "process")
     assert told["groups"][0]["runs"] == 30
     assert {"run": "P020", "chart": "individuals", "kind": "instrument"} in told["control_plates"][0]["alarms"]
+
+
+def test_new_tooling_rests_on_the_runs_since_the_last_edit(store):
+    tooling, indicated = [100.0] * 3 + [132.0] * 3, [200.0] * 3 + [155.0, 155.0, 155.0]
+    fill(
+        store,
+        [148.0] * 6,
+        time_s=90.0,
+        crystal_nm=indicated,
+        crystal_tooling_percent=tooling,
+        step_nm=[148.0] * 3 + [147.0, 148.0, 149.0],
+    )
+    (group,) = rates_json(rates(store))["groups"]
+    assert group["crystal_tooling_percent"]["value"] == pytest.approx(126.03870968, abs=1e-8)
+    # sd 1 nm of 3: 4.3027 / sqrt(3) nm, Student's factor of two degrees
+    assert group["crystal_tooling_percent"]["high"] == pytest.approx(
+        126.03870968 * (1 + 4.30265 / 3**0.5 / 148), rel=1e-5
+    )
 
 
 def test_in_line_runs_have_a_dynamic_rate(store):

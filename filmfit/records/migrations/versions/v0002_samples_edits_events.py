@@ -27,6 +27,7 @@ def upgrade() -> None:
         "events",
         sa.Column("id", sa.Integer(), nullable=False),
         sa.Column("chamber", sa.String(200), nullable=False),
+        sa.Column("source", sa.String(200), nullable=True),
         sa.Column("date", sa.Date(), nullable=False),
         sa.Column("kind", sa.String(40), nullable=False),
         sa.Column("note", sa.Text(), nullable=False),
