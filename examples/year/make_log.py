@@ -1,8 +1,8 @@
 """Makes the invented log of a year: two chambers, four sources, 300 runs, and the events of that year.
 
 Run it as `python make_log.py FOLDER`; it writes log.csv and names the blunders. It uses no filmfit. Chamber K1
-sputters ITO from one target, changed on 2 July, and AZO; chamber K2 evaporates silver and sputters ITO in line. Five blunders
-are among the runs: a stuck shutter, a wrong line in the book, a swapped plate.
+sputters ITO from one target, changed on 2 July, and AZO; chamber K2 evaporates silver and sputters ITO in line. Five
+blunders are among the runs: a stuck shutter, a wrong line in the book, a swapped plate.
 
 True values: ITO in K1 grows 16.8 nm/min at 400 W from a new target, falls by 0.3 % of that per kWh, and has a dead time
 of 4 s; its rate goes with power to the power 0.97. AZO grows 21.0 nm/min at 500 W and falls by 0.15 % per kWh. Silver
