@@ -84,7 +84,9 @@ def bring_in(records: Records, rows: Sequence[Incoming], sha256: str, dry_run: b
 def _part(session: Session, rows: Sequence[Incoming], sha256: str, dry_run: bool) -> list[BroughtIn]:
     """File one part of a log."""
     ids = [row.id for row in rows]
-    there = set(session.scalars(select(RunRow.id).where(RunRow.id.in_(ids))))
+    present = select(RunRow.id).where(RunRow.id.in_(ids)).order_by(RunRow.id)
+    # other writers of these runs wait here, in one order (SQLite has one writer at a time anyway)
+    there = set(session.scalars(present if dry_run else present.with_for_update()))
     done = [BroughtIn(row.id, "new", ()) for row in rows if row.id not in there]
     if not dry_run:
         _insert(session, [row for row in rows if row.id not in there], sha256)

@@ -40,7 +40,8 @@ def revise(session: Session, conditions: dict[str, Any], sha256: str) -> tuple[R
     """
     keys = conditions["run"]
     sample, state = piece(conditions)
-    run = session.get(RunRow, keys["id"])
+    # other writers of this run wait here (SQLite has one writer at a time anyway)
+    run = session.get(RunRow, keys["id"], with_for_update=True)
     now = datetime.now(UTC)
     if run is None:
         run = RunRow(id=keys["id"], created=now, **fields(keys))
