@@ -8,7 +8,7 @@ from typing import Any
 import click
 
 from filmfit.cli.options import json_option, records_option
-from filmfit.cli.runs_changes import amend, backup, confirm, event, export, import_, leave_out
+from filmfit.cli.runs_changes import amend, backup, check, confirm, event, export, import_, leave_out
 
 
 @click.group(epilog="Example: filmfit runs list")
@@ -16,7 +16,7 @@ def runs() -> None:
     """List, show, bring in, correct and copy the runs in the deposition records."""
 
 
-for command in (import_, export, confirm, amend, leave_out, event, backup):
+for command in (import_, export, confirm, amend, leave_out, event, backup, check):
     runs.add_command(command)
 
 

@@ -171,3 +171,24 @@ def backup(file: Path, records: str) -> None:
         raise UsageError(str(file), "is there already", do="name another file")
     edits.backup(records_path(records), file)
     click.echo(f"{file}: whole and sound")
+
+
+@click.command("check", epilog="Example: filmfit runs check")
+@records_option
+@json_option
+def check(records: str, json_to: str | None) -> None:
+    """Look whether the records are sound, and which runs have no usable fit; nothing is repaired."""
+    from filmfit.cli.options import write_json
+    from filmfit.cli.runs import must_exist
+    from filmfit.records import check as job
+    from filmfit.records.store import Records
+    from filmfit.report.plain import plain
+
+    must_exist(records)
+    with Records(records) as store:
+        found = job.check(store)
+    if json_to is None:
+        click.echo("\n".join(plain(line) for line in job.told(found)))
+        return
+    findings = [{"what": one.what, "runs": list(one.runs)} for one in found]
+    write_json({"schema": "filmfit.check/1", "findings": findings}, json_to)

@@ -28,7 +28,7 @@ def refused(told, line, status=2):
     ("arguments", "line"),
     [
         ([], "filmfit: no command given; allowed: fit, materials, new, next, rate, runs, trend; see 'filmfit --help'"),
-        (["runs"], "filmfit runs: no command given; allowed: amend, backup, confirm, event, export, import, leave-out, list, show; see 'filmfit runs --help'"),
+        (["runs"], "filmfit runs: no command given; allowed: amend, backup, check, confirm, event, export, import, leave-out, list, show; see 'filmfit runs --help'"),
         (["--verson"], "filmfit: No such option '--verson'. Did you mean '--version'?; see 'filmfit --help'"),
         (["fit"], "filmfit fit: Missing argument 'RUN.toml...'; see 'filmfit fit --help'"),
         (["fit", "x.toml", "--map", "m.csv"], "filmfit fit: --map is not supported yet; see 'filmfit fit --help'"),

@@ -21,6 +21,7 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
 from filmfit.records.bring_in import Incoming, bring_in
+from filmfit.records.check import check
 from filmfit.records.edits import Event, confirm, events, leave_out, tell_event
 from filmfit.records.series import deposited
 from filmfit.records.store import Records
@@ -103,6 +104,16 @@ def test_runs_come_in_once_and_are_corrected(address):
         assert found[1].thickness_nm == 250.0
         assert [one.fits for one in store.list_runs(2, "ITO")] == [1, 1]
         assert store.show("R0001").edits[0].action == "confirm"
+
+
+def test_check_names_what_is_wrong_and_repairs_nothing(address):
+    with Records(address) as store:
+        bring_in(store, [row("A"), Incoming(row("B").conditions)], "0")
+        assert [(one.what, one.runs) for one in check(store)] == [("no usable fit", ("B",))]
+        with store._engine.begin() as connection:
+            connection.exec_driver_sql("UPDATE runs SET fit = 7 WHERE id = 'A'")
+        for _ in range(2):
+            assert ("the fit that counts is not there", ("A",)) in [(one.what, one.runs) for one in check(store)]
 
 
 def write_many(address, worker, seconds, ready, told):
