@@ -50,7 +50,7 @@ def _findings(session: Session) -> tuple[Finding, ...]:
         ("no conditions that count", select(RunRow.id).where(~exists().where(this))),
         (
             "the fit that counts is not there",
-            select(RunRow.id).where(RunRow.fit.is_not(None), ~exists().where(counted)),
+            select(RunRow.id).where(RunRow.fit.is_not(None), lost),
         ),
         ("a fit of another run's conditions", select(RevisionRow.run_id).where(crossed)),
         ("no usable fit", select(RunRow.id).where(~usable)),
