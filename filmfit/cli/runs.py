@@ -47,16 +47,23 @@ def list_(records: str, json_to: str | None, last: int | None, film: str | None)
 def show(run: str, records: str, json_to: str | None) -> None:
     """Show a run: conditions, their changes, and every fit."""
     from filmfit.cli.options import write_json
+    from filmfit.jobs.pieces import pieces
     from filmfit.records.store import Records
-    from filmfit.report.text import run_text
+    from filmfit.report.plain import plain
+    from filmfit.report.text import quantity, run_text
 
     must_exist(records)
     with Records(records) as store:
         found = store.show(run)
+    beside = pieces(found)
     if json_to is None:
         click.echo(run_text(found))
+        for one in beside:
+            less = "counts" if one.difference_nm is None else f"differs by {quantity(one.difference_nm, 'nm')}"
+            click.echo(plain(f"{one.sample}, {one.state}: {quantity(one.thickness_nm, 'nm')}, {less}"))
         return
-    write_json({"schema": "filmfit.run/1", **_plain(found)}, json_to)
+    shown = [_plain(one) for one in beside]
+    write_json({"schema": "filmfit.run/1", **_plain(found), "samples": shown}, json_to)
 
 
 def must_exist(records: str) -> None:

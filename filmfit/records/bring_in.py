@@ -64,7 +64,7 @@ def bring_in(records: Records, rows: Sequence[Incoming], sha256: str, dry_run: b
 
     Args:
         records: open records.
-        rows: the runs, each id once.
+        rows: the runs, each sample and state of an id once.
         sha256: checksum of the log.
         dry_run: only tell what would be done.
 
@@ -87,13 +87,19 @@ def _part(session: Session, rows: Sequence[Incoming], sha256: str, dry_run: bool
     present = select(RunRow.id).where(RunRow.id.in_(ids)).order_by(RunRow.id)
     # other writers of these runs wait here, in one order (SQLite has one writer at a time anyway)
     there = set(session.scalars(present if dry_run else present.with_for_update()))
-    done = [BroughtIn(row.id, "new", ()) for row in rows if row.id not in there]
+    first: dict[str, Incoming] = {}
+    later: list[Incoming] = []  # of runs that are there, or further samples and states of new ones
+    for row in rows:
+        if row.id in there or row.id in first:
+            later.append(row)
+        else:
+            first[row.id] = row
+    done = [BroughtIn(row.id, "new", ()) for row in first.values()]
     if not dry_run:
-        _insert(session, [row for row in rows if row.id not in there], sha256)
-    if there:
-        known = _known(session, sorted(there))
-        old = [row for row in rows if row.id in there]
-        done += [_merge(session, row, known, sha256, dry_run) for row in old]
+        _insert(session, list(first.values()), sha256)
+    if later:
+        known = _known(session, sorted({row.id for row in later}))
+        done += [_merge(session, row, known, sha256, dry_run) for row in later]
     return done
 
 
@@ -147,7 +153,7 @@ def _merge(
         return BroughtIn(row.id, "same", ())
     if not dry_run:
         _append(session, row, revision, changes, new_depth, sha256)
-    return BroughtIn(row.id, "changed", changes)
+    return BroughtIn(row.id, "new" if revision is None else "changed", changes)
 
 
 def _append(

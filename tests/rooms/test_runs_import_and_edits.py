@@ -8,6 +8,7 @@ from click.testing import CliRunner
 
 from filmfit.cli.main import cli
 from filmfit.errors import Faults, FilmfitError
+from filmfit.jobs.pieces import pieces
 from filmfit.jobs.runs_edit import amend_run
 from filmfit.jobs.runs_import import import_runs
 from filmfit.records.edits import backup, confirm, leave_out
@@ -130,6 +131,28 @@ def test_confirm_and_leave_out(address, log):
         leave_out(records, "A2", "zoe", None)
         assert len(deposited(records)) == 2
         assert [edit.action for edit in records.show("A2").edits] == ["leave-out", "take-in"]
+
+
+def test_states_of_a_run_stand_side_by_side_and_the_run_counts_once(address, tmp_path):
+    log = tmp_path / "log.csv"
+    log.write_text(
+        "id,date,film,time_s,sample,state,thickness_nm,thickness_sigma_nm\n"
+        "A1,2026-01-05,ITO,900,centre,as-deposited,250,3\nA1,2026-01-05,ITO,900,centre,annealed,246,4\n"
+        "A1,2026-01-05,ITO,900,edge,as-deposited,240,3\n"
+    )
+    import_runs(address, log)
+    assert counts(import_runs(address, log)) == (0, 0, 3)
+    with Records(address) as records:
+        (run,) = deposited(records)
+        assert run.thickness_nm == 250.0
+        found = pieces(records.show("A1"))
+    assert [(one.sample, one.state) for one in found] == [
+        ("centre", "as-deposited"),
+        ("centre", "annealed"),
+        ("edge", "as-deposited"),
+    ]
+    assert found[0].difference_nm is None
+    assert (found[1].difference_nm.value, found[1].difference_nm.sigma) == (-4.0, 5.0)
 
 
 def test_export_comes_back_the_same(address, log, tmp_path):
