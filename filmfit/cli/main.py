@@ -13,13 +13,16 @@ from filmfit import __version__
 from filmfit.cli.fit import fit
 from filmfit.cli.materials import materials
 from filmfit.cli.new import new
+from filmfit.cli.next import next_
 from filmfit.cli.options import tell
+from filmfit.cli.rate import rate
 from filmfit.cli.runs import runs
+from filmfit.cli.trend import trend
 
 WRONG_USE = 2
 INTERRUPTED = 130  # 128 + SIGINT, as shells have it
 READER_GONE = 141  # 128 + SIGPIPE
-LATER = ("read", "thickness", "substrate", "rate", "next", "trend", "tradeoff")
+LATER = ("read", "thickness", "substrate", "tradeoff")
 
 
 class _Commands(click.Group):
@@ -46,7 +49,7 @@ def cli() -> None:
     """
 
 
-for command in (new, fit, runs, materials):
+for command in (new, fit, runs, rate, next_, trend, materials):
     cli.add_command(command)
 
 

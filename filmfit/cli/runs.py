@@ -8,11 +8,16 @@ from typing import Any
 import click
 
 from filmfit.cli.options import json_option, records_option
+from filmfit.cli.runs_changes import amend, backup, check, confirm, event, export, import_, leave_out
 
 
 @click.group(epilog="Example: filmfit runs list")
 def runs() -> None:
-    """List and show the runs in the deposition records."""
+    """List, show, bring in, correct and copy the runs in the deposition records."""
+
+
+for command in (import_, export, confirm, amend, leave_out, event, backup, check):
+    runs.add_command(command)
 
 
 @runs.command("list", epilog="Example: filmfit runs list --last 20")
@@ -26,7 +31,7 @@ def list_(records: str, json_to: str | None, last: int | None, film: str | None)
     from filmfit.records.store import Records
     from filmfit.report.text import runs_text
 
-    _must_exist(records)
+    must_exist(records)
     with Records(records) as store:
         found = store.list_runs(last, film)
     if json_to is None:
@@ -42,19 +47,26 @@ def list_(records: str, json_to: str | None, last: int | None, film: str | None)
 def show(run: str, records: str, json_to: str | None) -> None:
     """Show a run: conditions, their changes, and every fit."""
     from filmfit.cli.options import write_json
+    from filmfit.jobs.pieces import pieces
     from filmfit.records.store import Records
-    from filmfit.report.text import run_text
+    from filmfit.report.plain import plain
+    from filmfit.report.text import quantity, run_text
 
-    _must_exist(records)
+    must_exist(records)
     with Records(records) as store:
         found = store.show(run)
+    beside = pieces(found)
     if json_to is None:
         click.echo(run_text(found))
+        for one in beside:
+            less = "counts" if one.difference_nm is None else f"differs by {quantity(one.difference_nm, 'nm')}"
+            click.echo(plain(f"{one.sample}, {one.state}: {quantity(one.thickness_nm, 'nm')}, {less}"))
         return
-    write_json({"schema": "filmfit.run/1", **_plain(found)}, json_to)
+    shown = [_plain(one) for one in beside]
+    write_json({"schema": "filmfit.run/1", **_plain(found), "samples": shown}, json_to)
 
 
-def _must_exist(records: str) -> None:
+def must_exist(records: str) -> None:
     """Refuse to make new records where someone only wants to look."""
     from filmfit.cli.options import records_path
     from filmfit.errors import RecordsError

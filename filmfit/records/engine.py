@@ -14,7 +14,8 @@ from filmfit.errors import RecordsError
 from filmfit.records.tables import dumps
 
 BUSY_TIMEOUT_MS = 10_000
-NEWEST = "0001"  # the schema that this program writes
+NEWEST = "0002"  # the schema that this program writes
+MIGRATION_LOCK = 0x66696C6D  # a number of filmfit's own among the server's advisory locks: "film"
 READ_ONLY = {"read_only": True}
 
 
@@ -30,7 +31,7 @@ def open_engine(address: str) -> Engine:
     url = _url(address)
     _refuse_unwritable(url, address)
     try:
-        engine = create_engine(url, json_serializer=dumps)
+        engine = create_engine(url, json_serializer=dumps, pool_pre_ping=True)
     except (NoSuchModuleError, ImportError) as error:
         raise RecordsError(
             address, f"no driver for '{url.drivername}'", do="install it, or give a file name"
@@ -144,6 +145,8 @@ def _migrate(engine: Engine) -> None:
         if sqlite:
             connection.connection.cursor().execute("PRAGMA foreign_keys=OFF")
         with connection.begin():
+            if engine.dialect.name == "postgresql":  # one at a time: the next one finds the schema made
+                connection.exec_driver_sql(f"SELECT pg_advisory_xact_lock({MIGRATION_LOCK})")
             config.attributes["connection"] = connection
             command.upgrade(config, "head")
             if sqlite and connection.exec_driver_sql("PRAGMA foreign_key_check").first() is not None:

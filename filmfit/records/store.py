@@ -3,32 +3,24 @@
 Knows what is filed and how it is asked for; the tables are in tables.py, the database in engine.py.
 """
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from datetime import UTC, date, datetime
 from types import TracebackType
 from typing import Any, TypeVar
 
-from sqlalchemy import Engine, func, select
+from sqlalchemy import Engine, and_, func, select
 from sqlalchemy.exc import IntegrityError, SQLAlchemyError
 from sqlalchemy.orm import Session
 
 from filmfit.errors import RecordsError, nearest
+from filmfit.rates.rate import rate_nm_min
 from filmfit.records.engine import READ_ONLY, open_engine, told
-from filmfit.records.tables import FitRow, RevisionRow, RunRow
+from filmfit.records.revise import Change, batches, choose, revise
+from filmfit.records.tables import EditRow, FitRow, RevisionRow, RunRow
 from filmfit.result import Quantity, Result
 
-NOT_STATED = "-"
 Got = TypeVar("Got")
-
-
-@dataclass(frozen=True)
-class Change:
-    """A condition that a new revision changed: its key, the old and the new value (None: absent)."""
-
-    key: str
-    old: Any
-    new: Any
 
 
 @dataclass(frozen=True)
@@ -55,6 +47,8 @@ class RunSummary:
     answer: str | None
     thickness_nm: Quantity | None
     rate_nm_min: Quantity | None
+    kind: str = "run"
+    left_out: str | None = None
 
 
 @dataclass(frozen=True)
@@ -68,6 +62,9 @@ class FitRecord:
     thickness_nm: Quantity | None
     rate_nm_min: Quantity | None
     result: dict[str, Any]
+    sample: str
+    state: str
+    counts: bool
 
 
 @dataclass(frozen=True)
@@ -80,6 +77,21 @@ class RunRecord:
     conditions: dict[str, Any]
     revisions: tuple[tuple[int, datetime, tuple[Change, ...]], ...]
     fits: tuple[FitRecord, ...]
+    edits: tuple["Edit", ...] = ()
+    left_out: str | None = None
+
+
+@dataclass(frozen=True)
+class Edit:
+    """A change by a person, with the value before."""
+
+    created: datetime
+    who: str
+    action: str
+    key: str
+    old: Any
+    new: Any
+    because: str
 
 
 class Records:
@@ -114,7 +126,7 @@ class Records:
         """
 
         def write(session: Session) -> Filed:
-            revision, changes = _revision(session, conditions, run_file_sha256)
+            revision, changes = revise(session, conditions, run_file_sha256)
             run_id = revision.run_id
             last = session.scalar(select(func.max(FitRow.number)).where(FitRow.run_id == run_id)) or 0
             depth, rate = result.results.thickness_nm, result.results.rate_nm_min
@@ -125,12 +137,14 @@ class Records:
                     thickness_low_nm=_part(depth, "low"), thickness_high_nm=_part(depth, "high"),
                     rate_nm_min=_part(rate, "value"), rate_sigma_nm_min=_part(rate, "sigma"),
                     rate_low_nm_min=_part(rate, "low"), rate_high_nm_min=_part(rate, "high"),
-                    result=result.as_dict(), created=datetime.now(UTC),
+                    result=result.as_dict(), created=datetime.now(UTC), thickness_common_nm=_part(depth, "sigma"),
                 )
             )  # fmt: skip
+            session.flush()
+            choose(session, run_id)
             return Filed(run_id, revision.number, last + 1, changes)
 
-        return self._do(write)
+        return self.transact(write)
 
     def list_runs(self, last: int | None = None, film: str | None = None) -> tuple[RunSummary, ...]:
         """Return runs, the newest first.
@@ -145,15 +159,9 @@ class Records:
             if film is not None:
                 wanted = wanted.where(RunRow.film == film)
             rows = session.scalars(wanted.limit(last)).all()
-            fits: dict[str, list[FitRow]] = {}
-            ids = [row.id for row in rows]
-            for part in range(0, len(ids), 500):
-                found = select(FitRow).where(FitRow.run_id.in_(ids[part : part + 500])).order_by(FitRow.number)
-                for fit in session.scalars(found):
-                    fits.setdefault(fit.run_id, []).append(fit)
-            return tuple(_summary(row, fits.get(row.id, [])) for row in rows)
+            return tuple(row for part in batches(rows) for row in _summaries(session, part))
 
-        return self._do(read, reading=True)
+        return self.transact(read, reading=True)
 
     def show(self, run_id: str) -> RunRecord:
         """Return everything filed under a run.
@@ -172,21 +180,28 @@ class Records:
             revisions = session.scalars(
                 select(RevisionRow).where(RevisionRow.run_id == run_id).order_by(RevisionRow.number)
             ).all()
-            numbers = {one.id: one.number for one in revisions}
+            by_id = {one.id: one for one in revisions}
+            present = next(one for one in revisions if one.number == run.revision)
             fits = session.scalars(select(FitRow).where(FitRow.run_id == run_id).order_by(FitRow.number)).all()
             return RunRecord(
-                run.id, run.date, run.film, revisions[-1].conditions,
+                run.id, run.date, run.film, present.conditions,
                 tuple((one.number, one.created, tuple(Change(*row) for row in one.changes)) for one in revisions),
                 tuple(
-                    FitRecord(fit.number, numbers[fit.revision_id], fit.created, fit.answer, _thickness(fit),
-                              _rate(fit), fit.result)
+                    FitRecord(fit.number, by_id[fit.revision_id].number, fit.created, fit.answer, _thickness(fit),
+                              _rate(fit), fit.result, by_id[fit.revision_id].sample, by_id[fit.revision_id].state,
+                              fit.number == run.fit)
                     for fit in fits
                 ),
+                tuple(
+                    Edit(one.created, one.who, one.action, one.key, one.old, one.new, one.because)
+                    for one in session.scalars(select(EditRow).where(EditRow.run_id == run_id).order_by(EditRow.id))
+                ),
+                run.left_out,
             )  # fmt: skip
 
-        return self._do(read, reading=True)
+        return self.transact(read, reading=True)
 
-    def _do(self, work: Callable[[Session], Got], reading: bool = False) -> Got:
+    def transact(self, work: Callable[[Session], Got], reading: bool = False) -> Got:
         """Run one piece of work in one transaction; a writer that lost a race for a number tries again."""
         for attempt in (1, 2, 3):
             try:
@@ -202,52 +217,6 @@ class Records:
             except SQLAlchemyError as error:
                 raise told(error, self.address) from error
         raise AssertionError("unreachable: the loop returns or raises")
-
-
-def _revision(session: Session, conditions: dict[str, Any], sha256: str) -> tuple[RevisionRow, tuple[Change, ...]]:
-    """Return the run's revision of these conditions, made where they are new."""
-    keys = conditions["run"]
-    run = session.get(RunRow, keys["id"])
-    fields = {
-        "date": date.fromisoformat(str(keys["date"])),
-        "film": keys["film"],
-        "chamber": keys.get("chamber") or NOT_STATED,
-        "source": keys.get("source") or NOT_STATED,
-        "process": keys.get("process") or NOT_STATED,
-    }
-    now = datetime.now(UTC)
-    latest = None
-    if run is None:
-        session.add(RunRow(id=keys["id"], created=now, **fields))
-    else:
-        latest = session.scalar(
-            select(RevisionRow).where(RevisionRow.run_id == run.id).order_by(RevisionRow.number.desc()).limit(1)
-        )
-    changes = differences(latest.conditions, conditions) if latest is not None else ()
-    if latest is not None and not changes:
-        return latest, ()
-    if run is not None:
-        for name, value in fields.items():
-            setattr(run, name, value)
-    made = RevisionRow(
-        run_id=keys["id"], number=1 if latest is None else latest.number + 1, conditions=conditions,
-        changes=[[one.key, one.old, one.new] for one in changes], run_file=sha256, created=now,
-    )  # fmt: skip
-    session.flush()
-    session.add(made)
-    session.flush()
-    return made, changes
-
-
-def differences(old: Any, new: Any, key: str = "") -> tuple[Change, ...]:
-    """Return what differs between two sets of conditions, by dotted key; lists are compared whole."""
-    if isinstance(old, dict) and isinstance(new, dict):
-        return tuple(
-            change
-            for name in sorted({*old, *new})
-            for change in differences(old.get(name), new.get(name), f"{key}.{name}" if key else str(name))
-        )
-    return () if old == new else (Change(key, old, new),)
 
 
 def _part(quantity: Quantity | None, name: str) -> float | None:
@@ -272,12 +241,25 @@ def _quantity(value: float | None, sigma: float | None, low: float | None, high:
     return Quantity(value=value, sigma=sigma, low=low, high=high)
 
 
-def _summary(run: RunRow, fits: list[FitRow]) -> RunSummary:
-    """Return a run's line: its latest usable fit counts, else its latest."""
-    counted = next((fit for fit in reversed(fits) if fit.answer == "usable"), fits[-1] if fits else None)
-    return RunSummary(
-        run.id, run.date, run.film, run.chamber, run.source, run.process, len(fits),
-        counted.answer if counted else None,
-        _thickness(counted) if counted else None,
-        _rate(counted) if counted else None,
-    )  # fmt: skip
+def _summaries(session: Session, runs: Sequence[RunRow]) -> list[RunSummary]:
+    """Return the lines of some runs, each with the fit that counts and the rate of its present conditions."""
+    ids = [run.id for run in runs]
+    mine = RunRow.id.in_(ids)
+    counted = select(FitRow.run_id, func.count()).where(FitRow.run_id.in_(ids)).group_by(FitRow.run_id)
+    counts: dict[str, int] = {row[0]: row[1] for row in session.execute(counted)}
+    that_counts = and_(RunRow.id == FitRow.run_id, RunRow.fit == FitRow.number)
+    fits = {fit.run_id: fit for fit in session.scalars(select(FitRow).join(RunRow, that_counts).where(mine))}
+    present = and_(RunRow.id == RevisionRow.run_id, RunRow.revision == RevisionRow.number)
+    found = session.scalars(select(RevisionRow).join(RunRow, present).where(mine))
+    revisions = {one.run_id: one.conditions for one in found}
+    lines = []
+    for run in runs:
+        fit = fits.get(run.id)
+        depth = _thickness(fit) if fit else None
+        time_s = revisions.get(run.id, {}).get("run", {}).get("time_s")
+        rate = rate_nm_min(depth, time_s) if depth is not None and time_s else None
+        lines.append(
+            RunSummary(run.id, run.date, run.film, run.chamber, run.source, run.process, counts.get(run.id, 0),
+                       fit.answer if fit else None, depth, rate, run.kind, run.left_out)
+        )  # fmt: skip
+    return lines

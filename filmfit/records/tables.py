@@ -9,15 +9,18 @@ from typing import Any
 
 from sqlalchemy import (
     JSON,
+    Boolean,
     Date,
     DateTime,
     Dialect,
     ForeignKey,
+    Index,
     MetaData,
     String,
     Text,
     TypeDecorator,
     UniqueConstraint,
+    false,
 )
 from sqlalchemy.orm import DeclarativeBase, Mapped, mapped_column
 
@@ -61,6 +64,7 @@ class RunRow(Base):
     """One deposition, by its id; what is often asked for, of its latest revision."""
 
     __tablename__ = "runs"
+    __table_args__ = (Index("ix_runs_chamber_source", "chamber", "source"),)
 
     id: Mapped[str] = mapped_column(String(100), primary_key=True)
     date: Mapped[date] = mapped_column(Date, index=True)
@@ -69,6 +73,11 @@ class RunRow(Base):
     source: Mapped[str] = mapped_column(String(200))
     process: Mapped[str] = mapped_column(String(100))
     created: Mapped[datetime] = mapped_column(Utc)
+    kind: Mapped[str] = mapped_column(String(40), server_default="run")
+    revision: Mapped[int | None]  # the number of the revision whose conditions count
+    fit: Mapped[int | None]  # the number of the fit that counts
+    confirmed: Mapped[bool] = mapped_column(Boolean, server_default=false())  # a person chose that fit
+    left_out: Mapped[str | None] = mapped_column(Text)  # why a person left the run out
 
 
 class RevisionRow(Base):
@@ -84,6 +93,8 @@ class RevisionRow(Base):
     changes: Mapped[list[Any]] = mapped_column(JSON)
     run_file: Mapped[str] = mapped_column(String(80))
     created: Mapped[datetime] = mapped_column(Utc)
+    sample: Mapped[str] = mapped_column(String(200), server_default="-")
+    state: Mapped[str] = mapped_column(String(200), server_default="as-deposited")
 
 
 class FitRow(Base):
@@ -106,6 +117,37 @@ class FitRow(Base):
     rate_low_nm_min: Mapped[float | None]
     rate_high_nm_min: Mapped[float | None]
     result: Mapped[dict[str, Any]] = mapped_column(JSON)
+    created: Mapped[datetime] = mapped_column(Utc)
+    thickness_common_nm: Mapped[float | None]  # the part of sigma that runs of one instrument share
+
+
+class EventRow(Base):
+    """What happened to a chamber, a source or an instrument on a day."""
+
+    __tablename__ = "events"
+
+    id: Mapped[int] = mapped_column(primary_key=True)
+    chamber: Mapped[str] = mapped_column(String(200), index=True)
+    source: Mapped[str | None] = mapped_column(String(200))  # None: all sources of the chamber
+    date: Mapped[date] = mapped_column(Date)
+    kind: Mapped[str] = mapped_column(String(40))
+    note: Mapped[str] = mapped_column(Text)
+    created: Mapped[datetime] = mapped_column(Utc)
+
+
+class EditRow(Base):
+    """One change by a person: who, when, what, why, and the value before; appended, never overwritten."""
+
+    __tablename__ = "edits"
+
+    id: Mapped[int] = mapped_column(primary_key=True)
+    run_id: Mapped[str | None] = mapped_column(ForeignKey("runs.id"), index=True)
+    action: Mapped[str] = mapped_column(String(40))
+    key: Mapped[str] = mapped_column(String(200))
+    old: Mapped[Any] = mapped_column(JSON)
+    new: Mapped[Any] = mapped_column(JSON)
+    who: Mapped[str] = mapped_column(String(200))
+    because: Mapped[str] = mapped_column(Text)
     created: Mapped[datetime] = mapped_column(Utc)
 
 

@@ -67,6 +67,8 @@ def quantity(got: Quantity | None, unit: str) -> str:
         if got.low is not None:
             return f"at least {number(got.low, None)}{tail}"
         return f"at most {number(got.high or 0.0, None)}{tail}"
+    if got.low is None and got.high is None:
+        return f"{number(got.value, got.sigma)}{tail}"
     ends = " to ".join(number(end, got.sigma, got.value) for end in (got.low, got.high) if end is not None)
     return f"{number(got.value, got.sigma)}{tail}   (95 %: {ends})"
 
@@ -176,13 +178,20 @@ def run_text(record: RunRecord) -> str:
     for number_, when, changes in record.revisions[1:]:
         lines.append(f"revision {number_}, {when:%Y-%m-%d %H:%M} UTC")
         lines += [f"  {one.key}: {one.old} -> {one.new}" for one in changes]
+    for edit in record.edits:
+        why = f" because {edit.because}" if edit.because else ""
+        said = f"{edit.key} from {edit.old} to {edit.new}{why}"
+        lines.append(f"{edit.created:%Y-%m-%d %H:%M} UTC, {edit.who}: {edit.action}, {said}")
+    if record.left_out:
+        lines.append(f"left out of rates and trends: {record.left_out}")
     rows = [
-        (str(fit.number), str(fit.revision), f"{fit.created:%Y-%m-%d %H:%M}", fit.answer,
+        (f"{fit.number}{'*' if fit.counts else ''}", str(fit.revision), fit.sample, fit.state,
+         f"{fit.created:%Y-%m-%d %H:%M}", fit.answer,
          quantity(fit.thickness_nm, "nm"), _short(fit.rate_nm_min))
         for fit in record.fits
     ]  # fmt: skip
     return f"{_page([*lines, ''])}\n" + _table(
-        ("fit", "revision", "filed (UTC)", "answer", "thickness", "rate nm/min"), rows
+        ("fit", "revision", "sample", "state", "filed (UTC)", "answer", "thickness", "rate nm/min"), rows
     )
 
 

@@ -26,7 +26,7 @@ LATER_VALUES: dict[str, tuple[str, ...]] = {
     "accessory": ("double-bounce", "sphere"),
     "back": ("rough",),
 }
-LATER_KEYS = ("standard", "standard_sigma", "back_layer", "roughness_nm", "gradient", "mask_nm", "kind", "target_mode")
+LATER_KEYS = ("standard", "standard_sigma", "back_layer", "roughness_nm", "gradient", "mask_nm")
 
 
 class Keys(BaseModel):
@@ -128,6 +128,8 @@ class Run(Process):
     date: date
     film: Name
     recipe: Name | None = None
+    kind: Literal["run", "control-plate"] = "run"
+    target_mode: Literal["metallic", "transition", "oxide"] | None = None
     chamber: Name | None = None
     time_from: Literal["shutter", "plasma"] = "shutter"
     carrier_speed_m_min: Positive | None = None

@@ -23,7 +23,7 @@ PACKAGE = Path(filmfit.__file__).parent
 FILES = sorted(PACKAGE.rglob("*.py"))
 HOMES = {
     "lmfit": ("fit/",),
-    "matplotlib": ("report/figures.py",),
+    "matplotlib": ("report/figures.py", "report/rate_figures.py"),
     "tmm": ("optics/by_tmm.py",),
     "sqlalchemy": ("records/",),
     "alembic": ("records/",),

@@ -27,8 +27,8 @@ def refused(told, line, status=2):
 @pytest.mark.parametrize(
     ("arguments", "line"),
     [
-        ([], "filmfit: no command given; allowed: fit, materials, new, runs; see 'filmfit --help'"),
-        (["runs"], "filmfit runs: no command given; allowed: list, show; see 'filmfit runs --help'"),
+        ([], "filmfit: no command given; allowed: fit, materials, new, next, rate, runs, trend; see 'filmfit --help'"),
+        (["runs"], "filmfit runs: no command given; allowed: amend, backup, check, confirm, event, export, import, leave-out, list, show; see 'filmfit runs --help'"),
         (["--verson"], "filmfit: No such option '--verson'. Did you mean '--version'?; see 'filmfit --help'"),
         (["fit"], "filmfit fit: Missing argument 'RUN.toml...'; see 'filmfit fit --help'"),
         (["fit", "x.toml", "--map", "m.csv"], "filmfit fit: --map is not supported yet; see 'filmfit fit --help'"),

@@ -58,7 +58,7 @@ REFUSED = [
     ("time_s = 900", "tme_s = 900", "run.toml:7: run.tme_s: unknown key; did you mean 'time_s'?"),
     ("time_s = 900", "passes = 1.5", "run.toml:7: run.passes: 1.5; allowed: a whole number"),
     ("time_s = 900", "flows_sccm = { Ar = -1.0 }", "run.toml:7: run.flows_sccm.Ar: -1.0; allowed: at least 0"),
-    ("time_s = 900", 'kind = "control-plate"', "run.toml:7: run.kind: is not supported yet; leave it out"),
+    ("time_s = 900", 'kind = "control"', "run.toml:7: run.kind: 'control'; allowed: 'run' or 'control-plate'"),
     ("thickness_mm = 1.1\n", "", "run.toml:9: substrate.thickness_mm: is missing; add thickness_mm"),
     ("thickness_mm = 1.1", "thickness_mm = 1.1\nback = \"rough\"",
      "run.toml:11: substrate.back: 'rough' is not supported yet; allowed: 'bare', 'blackened' or 'index-matched'"),

@@ -108,7 +108,7 @@ def test_json_on_standard_output_is_nothing_else(example, tmp_path):
     ("arguments", "line"),
     [
         (["fti"], "filmfit: No such command 'fti'. Did you mean 'fit'?; see 'filmfit --help'"),
-        (["rate", "--of", "x"], "filmfit: 'rate' is not supported yet; see 'filmfit --help'"),
+        (["tradeoff", "--of", "x"], "filmfit: 'tradeoff' is not supported yet; see 'filmfit --help'"),
         (["fit"], "filmfit fit: Missing argument 'RUN.toml...'; see 'filmfit fit --help'"),
         (["fit", "x.toml", "--together"], "filmfit fit: --together is not supported yet; see 'filmfit fit --help'"),
         (["fit", "x.toml", "--workers", "4"], "filmfit fit: --workers is not supported yet; see 'filmfit fit --help'"),

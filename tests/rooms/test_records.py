@@ -8,7 +8,8 @@ from alembic.autogenerate import compare_metadata
 from alembic.migration import MigrationContext
 
 from filmfit.errors import RecordsError
-from filmfit.records.store import Change, Records, differences
+from filmfit.records.revise import Change, differences
+from filmfit.records.store import Records
 from filmfit.records.tables import Base, dumps
 from filmfit.result import FitSummary, Provenance, Quantity, Result, Results
 
@@ -148,7 +149,7 @@ def test_an_empty_file_becomes_records_and_a_second_opening_changes_nothing(tmp_
         (lambda p: _foreign(p), "{path}: is another program's database; name another file with --records"),
         (
             lambda p: _newer(p),
-            "{path}: was written by a newer filmfit (schema 9999); allowed: schema 0001 or older; upgrade filmfit",
+            "{path}: was written by a newer filmfit (schema 9999); allowed: schema 0002 or older; upgrade filmfit",
         ),
     ],
 )
