@@ -103,6 +103,11 @@ TABLE: dict[str, Entry] = {
         "measure to longer wavelengths or on silica, or fit several thicknesses of one recipe together",
         "usable",
     ),
+    "thickness-poorly-known": Entry(
+        "the data know the thickness of this film to {percent:.0f} % only (one standard uncertainty)",
+        "measure to longer wavelengths or on silica, or fit several thicknesses of one recipe together",
+        "check",
+    ),
     "carriers-not-determined": Entry(
         "the data end at {longest_nm:.0f} nm, before the free carriers of this film show",
         "measure further into the near infrared",

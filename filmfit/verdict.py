@@ -25,6 +25,8 @@ STRUCTURE_GROWTH = 2.0  # chi2 per point that noise and a free law cannot explai
 POOR_RMS = 0.02
 OPAQUE_TRANSMITTANCE = 0.005
 COUPLED_RELATIVE_SIGMA = 0.02
+POOR_RELATIVE_SIGMA = 0.2
+LOOSE_RELATIVE_SIGMA, UNLIKELY_SIGMAS = 0.015, 1.5
 SUM_SIGMAS = 3.0
 NEAR_NORMAL_DEG = 15.0
 THIN_SUBSTRATE_MM = 0.2
@@ -59,9 +61,9 @@ def judge(
     reasons += parameter_reasons(outcome.solution)
     reasons += scan_reasons(scans, float(np.hypot(*_scale_sigmas(file))))
     expectation = source.index_550 if source is not None and built.problem.index_expectations else None
-    reasons += thickness_reasons(
-        results.thickness_nm, (expectation.value, expectation.sigma) if expectation else None, scans
-    )
+    expected = (expectation.value, expectation.sigma) if expectation else None
+    reasons += thickness_reasons(results.thickness_nm, expected, scans)
+    reasons += index_reasons(results.thickness_nm, results.index_550, expected)
     reasons += quantity_reasons(results, outcome.solution.problem.runs[0].layers[built.main[0][1]].law_names, scans)
     for name, low, high in built.left_out:
         reasons.append(reason("outside-material-range", material=name, low=low, high=high))
@@ -233,4 +235,23 @@ def thickness_reasons(
         reasons.append(reason("thickness-not-determined", "thickness_nm"))
     elif expectation is not None and (thickness.sigma or 0.0) > COUPLED_RELATIVE_SIGMA * (thickness.value or 1.0):
         reasons.append(reason("thickness-index-coupled", "thickness_nm", index=expectation[0], sigma=expectation[1]))
+    if thickness is not None and thickness.value and (thickness.sigma or 0.0) > POOR_RELATIVE_SIGMA * thickness.value:
+        percent = 100 * (thickness.sigma or 0.0) / thickness.value
+        reasons.append(reason("thickness-poorly-known", "thickness_nm", percent=percent))
     return reasons
+
+
+def index_reasons(
+    thickness: Quantity | None, index_550: Quantity | None, expectation: tuple[float, float] | None
+) -> list[Reason]:
+    """Return that the film's index ended far from what its material leads one to expect.
+
+    Where index and thickness trade off, an unlikely index is an unlikely thickness: less of it is borne.
+    """
+    if index_550 is None or index_550.value is None or expectation is None:
+        return []
+    sigmas = abs(index_550.value - expectation[0]) / expectation[1]
+    loose = thickness is not None and (thickness.sigma or 0.0) > LOOSE_RELATIVE_SIGMA * (thickness.value or 1.0)
+    if sigmas <= (UNLIKELY_SIGMAS if loose else NUISANCE_SIGMAS):
+        return []
+    return [reason("far-from-expected", "index_550", parameter="index at 550 nm", value=index_550.value, sigmas=sigmas)]

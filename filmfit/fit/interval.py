@@ -18,7 +18,7 @@ STEP_SIGMAS = 0.05  # of the difference quotient, in sigmas of each parameter
 CLEARLY_BETTER = 0.5  # in chi2
 # The data also chose how free the law is, which a covariance at that choice leaves out: found by the coverage of made
 # films, DEVELOPERS.md.
-CHOICE = 1.2**2
+CHOICE = 1.3**2
 PARABOLIC = 0.02  # a relative uncertainty up to which the likelihood of a thickness is a parabola
 LARGEST_RATIO = 50.0  # of the interval's ends; beyond it a parameter is not determined
 LARGEST_RELATIVE_SIGMA = 1.0  # beyond it a positive quantity is not determined

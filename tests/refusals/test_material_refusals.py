@@ -34,7 +34,7 @@ laws = ["constant"]
          "did you mean 'constant'?"),
         ('kind = "fixed"', 'kind = "fixed"\nflavour = 1',
          "x.toml: flavour: unknown key; allowed: name, kind, description, valid_nm, reference, origin, laws, parameters, "
-         "table, starting, index_550, effective_mass, continuous_above_nm"),
+         "table, starting, index_550, effective_mass, continuous_above_nm, index_sigma"),
     ],
 )  # fmt: skip
 def test_sentence(tmp_path, old, new, sentence):
