@@ -173,8 +173,9 @@ TABLE: dict[str, Entry] = {
         "report this run file: the calculation is not to be trusted",
         "unusable",
     ),
-    "thin-substrate": Entry(
-        "a substrate of {thickness_mm:g} mm shows fringes of its own, which the fit takes as averaged out",
+    "foil-substrate": Entry(
+        "a substrate of {thickness_mm:g} mm shows fringes of its own, {fringe_nm:.2g} nm apart at 550 nm, which the "
+        "fit takes as averaged out",
         "measure with a wider slit",
         "check",
     ),

@@ -29,7 +29,7 @@ POOR_RELATIVE_SIGMA = 0.2
 LOOSE_RELATIVE_SIGMA, UNLIKELY_SIGMAS = 0.015, 1.5
 SUM_SIGMAS = 3.0
 NEAR_NORMAL_DEG = 15.0
-THIN_SUBSTRATE_MM = 0.2
+THIN_SUBSTRATE_MM, FRINGE_AT_NM, FRINGE_PER_SLIT = 0.2, 550.0, 0.2
 BOUND_SHARE = 1e-3
 LARGEST_TMM_DIFFERENCE = 1e-6
 
@@ -67,8 +67,7 @@ def judge(
     reasons += quantity_reasons(results, outcome.solution.problem.runs[0].layers[built.main[0][1]].law_names, scans)
     for name, low, high in built.left_out:
         reasons.append(reason("outside-material-range", material=name, low=low, high=high))
-    if file.content.substrate.thickness_mm < THIN_SUBSTRATE_MM:
-        reasons.append(reason("thin-substrate", thickness_mm=file.content.substrate.thickness_mm))
+    reasons += foil_reasons(file, built)
     reasons += comparison_reasons(file, results)
     depth = results.thickness_nm
     if depth is not None and depth.low == depth.high:
@@ -82,6 +81,17 @@ def judge(
         reasons.append(reason("not-crosschecked", difference=difference))
     reasons.sort(key=lambda one: -ORDER.index(TABLE[one.code].allows))
     return reasons, best_answer([one.code for one in reasons])
+
+
+def foil_reasons(file: RunFile, built: Built) -> list[Reason]:
+    """Return that the plate is so thin, or the slit so narrow, that its own fringes are seen."""
+    thickness_mm, slit_nm = file.content.substrate.thickness_mm, file.content.instrument.slit_nm
+    plate = built.plates[0]
+    index = float(np.interp(FRINGE_AT_NM, plate.wavelength_nm, plate.index))
+    fringe_nm = FRINGE_AT_NM**2 / (2e6 * index * thickness_mm)
+    if thickness_mm >= THIN_SUBSTRATE_MM and (slit_nm is None or fringe_nm <= FRINGE_PER_SLIT * slit_nm):
+        return []
+    return [reason("foil-substrate", thickness_mm=thickness_mm, fringe_nm=fringe_nm)]
 
 
 def _scale_sigmas(file: RunFile) -> tuple[float, float]:
